@@ -1,0 +1,39 @@
+import { z } from 'zod';
+import { CantRegister } from './cant-register.ts';
+import { Mode } from './common.ts';
+import { LimitSet } from './limit-set.ts';
+import { Vehicle } from './vehicle.ts';
+
+/** What to assume where no register gives the cant. */
+export const CantRule = z.discriminatedUnion('kind', [
+  z.object({ kind: z.literal('unknown') }),
+  z.object({ kind: z.literal('constant'), value: z.number() }),
+  /** A share of equilibrium cant at the given speed, capped. */
+  z.object({ kind: z.literal('share'), share: z.number().min(0).max(1), speedKmh: z.number().positive(), capMm: z.number().positive() }),
+]);
+export type CantRule = z.infer<typeof CantRule>;
+
+/** Everything a verdict depends on besides the measured run. */
+export const Setup = z.object({
+  mode: Mode,
+  limits: LimitSet,
+  vehicle: Vehicle,
+  register: CantRegister.nullable(),
+  cantRule: CantRule,
+  tier: z.enum(['normal', 'exceptional']),
+  /** Two-sided confidence of intervals and advice, for example 0.95. */
+  confidence: z.number().gt(0.5).lt(1),
+});
+export type Setup = z.infer<typeof Setup>;
+
+/** The same by reference, as stored and sent: ids of sets kept by the server. */
+export const SetupRef = z.object({
+  mode: Mode,
+  limitSetId: z.string(),
+  vehicleId: z.string(),
+  registerId: z.string().nullable(),
+  cantRule: CantRule,
+  tier: z.enum(['normal', 'exceptional']),
+  confidence: z.number().gt(0.5).lt(1),
+});
+export type SetupRef = z.infer<typeof SetupRef>;
