@@ -1,7 +1,16 @@
 // Finds a Chromium for the browser tests: $BROWSER_PATH, then one of the system, then the one
 // that the package @sparticuz/chromium carries, unpacked once into node_modules/.cache.
 import { spawnSync } from 'node:child_process';
-import { createReadStream, createWriteStream, existsSync, mkdirSync, readFileSync, renameSync, rmSync, chmodSync } from 'node:fs';
+import {
+  createReadStream,
+  createWriteStream,
+  existsSync,
+  mkdirSync,
+  readFileSync,
+  renameSync,
+  rmSync,
+  chmodSync,
+} from 'node:fs';
 import { dirname, join } from 'node:path';
 import { pipeline } from 'node:stream/promises';
 import { fileURLToPath } from 'node:url';
@@ -80,7 +89,8 @@ async function unpackPackaged() {
   const env = {};
   const libraries = join(cache, 'al2023/lib');
   if (!starts(path, {}) && existsSync(libraries)) env.LD_LIBRARY_PATH = libraries;
-  if (!existsSync('/etc/fonts/fonts.conf') && existsSync(join(cache, 'fonts/fonts.conf'))) env.FONTCONFIG_PATH = join(cache, 'fonts');
+  if (!existsSync('/etc/fonts/fonts.conf') && existsSync(join(cache, 'fonts/fonts.conf')))
+    env.FONTCONFIG_PATH = join(cache, 'fonts');
   return { path, env };
 }
 

@@ -8,7 +8,21 @@ const checks = [
   ['types: client', ['node_modules/typescript/bin/tsc', '-p', 'client/tsconfig.json']],
   ['lint', ['node_modules/eslint/bin/eslint.js', '.', '--max-warnings', '0']],
   ['format', ['node_modules/prettier/bin/prettier.cjs', '--check', '.', '--log-level', 'warn']],
-  ['import boundaries', ['node_modules/dependency-cruiser/bin/dependency-cruise.mjs', 'server', 'shared', 'client', 'data', 'tests', '--config', '.dependency-cruiser.cjs', '--output-type', 'err']],
+  [
+    'import boundaries',
+    [
+      'node_modules/dependency-cruiser/bin/dependency-cruise.mjs',
+      'server',
+      'shared',
+      'client',
+      'data',
+      'tests',
+      '--config',
+      '.dependency-cruiser.cjs',
+      '--output-type',
+      'err',
+    ],
+  ],
   ['unused code', ['node_modules/knip/bin/knip.js', '--no-progress']],
 ];
 const failed = [];

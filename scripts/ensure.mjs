@@ -12,7 +12,9 @@ const wanted = new Set(process.argv.slice(2));
 
 const [major = 0, minor = 0] = process.versions.node.split('.').map(Number);
 if (major < 20 || (major === 20 && minor < 19)) {
-  console.error(`Bendbook needs Node 20.19 or later; this is ${process.version}. Install a current Node and try again.`);
+  console.error(
+    `Bendbook needs Node 20.19 or later; this is ${process.version}. Install a current Node and try again.`,
+  );
   process.exit(1);
 }
 
@@ -57,7 +59,10 @@ async function prepareBrowser() {
 }
 
 function run(command, args) {
-  const result = spawnSync(command, args, { stdio: 'inherit', shell: process.platform === 'win32' && command === 'npm' });
+  const result = spawnSync(command, args, {
+    stdio: 'inherit',
+    shell: process.platform === 'win32' && command === 'npm',
+  });
   if (result.status !== 0) {
     console.error(`"${command} ${args.join(' ')}" failed; see the lines above.`);
     process.exit(result.status ?? 1);

@@ -9,7 +9,12 @@ export const CantRule = z.discriminatedUnion('kind', [
   z.object({ kind: z.literal('unknown') }),
   z.object({ kind: z.literal('constant'), value: z.number() }),
   /** A share of equilibrium cant at the given speed, capped. */
-  z.object({ kind: z.literal('share'), share: z.number().min(0).max(1), speedKmh: z.number().positive(), capMm: z.number().positive() }),
+  z.object({
+    kind: z.literal('share'),
+    share: z.number().min(0).max(1),
+    speedKmh: z.number().positive(),
+    capMm: z.number().positive(),
+  }),
 ]);
 export type CantRule = z.infer<typeof CantRule>;
 

@@ -12,7 +12,9 @@ interface Found {
  * must fail loudly rather than pass unseen.
  */
 export async function launchBrowser(): Promise<Browser> {
-  const { findBrowser } = (await import('../../scripts/browser.mjs' as string)) as { findBrowser: () => Promise<Found> };
+  const { findBrowser } = (await import('../../scripts/browser.mjs' as string)) as {
+    findBrowser: () => Promise<Found>;
+  };
   const found = await findBrowser();
   if (found.path === null) throw new Error(`No browser for the browser tests: ${found.reason}. ${found.remedy}`);
   return await chromium.launch({
