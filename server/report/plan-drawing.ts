@@ -56,7 +56,7 @@ export function planDrawing(run: ReportedRun, table: ProfileTable, width = 520, 
     target.push(p.x(i), p.y(i), p.x(i + 1), p.y(i + 1), NaN, NaN);
   }
   classes.forEach((points, k) => {
-    marks.push({ kind: 'line', points, stroke: interpolateCividis(0.05 + (0.8 * k) / (CLASSES - 1)), width: 1.6 });
+    marks.push({ kind: 'line', points, stroke: hexColour(interpolateCividis(0.05 + (0.8 * k) / (CLASSES - 1))), width: 1.6 });
   });
   marks.push(
     { kind: 'line', points: over, stroke: INK, width: 5.4 },
@@ -165,6 +165,11 @@ export function nearest(ascending: ArrayLike<number>, value: number): number {
     else high = middle;
   }
   return low > 0 && value - ascending[low - 1]! < ascending[low]! - value ? low - 1 : low;
+}
+
+/** `rgb(r, g, b)` as `#rrggbb`, the one form that SVG and PDF both read. */
+function hexColour(rgb: string): string {
+  return `#${(rgb.match(/\d+/g) ?? []).map((part) => Number(part).toString(16).padStart(2, '0')).join('')}`;
 }
 
 function radians(deg: number): number {

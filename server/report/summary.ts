@@ -61,7 +61,7 @@ export const SHORT_COLUMNS: readonly (readonly [key: keyof CurveRow, title: stri
   ['lateral_track_ms2', 'a m/s²'],
   ['utilisation', 'Util.'],
   ['verdict', 'Verdict'],
-  ['complying_speed_kmh', 'Comply km/h'],
+  ['complying_speed_kmh', 'Complying'],
 ];
 
 export function shortCell(row: CurveRow, key: keyof CurveRow): string {
