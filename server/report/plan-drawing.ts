@@ -56,7 +56,12 @@ export function planDrawing(run: ReportedRun, table: ProfileTable, width = 520, 
     target.push(p.x(i), p.y(i), p.x(i + 1), p.y(i + 1), NaN, NaN);
   }
   classes.forEach((points, k) => {
-    marks.push({ kind: 'line', points, stroke: hexColour(interpolateCividis(0.05 + (0.8 * k) / (CLASSES - 1))), width: 1.6 });
+    marks.push({
+      kind: 'line',
+      points,
+      stroke: hexColour(interpolateCividis(0.05 + (0.8 * k) / (CLASSES - 1))),
+      width: 1.6,
+    });
   });
   marks.push(
     { kind: 'line', points: over, stroke: INK, width: 5.4 },
