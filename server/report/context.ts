@@ -9,6 +9,9 @@ export interface ReportedRun {
   readonly startUtcS: number;
   readonly durationS: number;
   readonly lengthM: number;
+  /** Fixes of the recording that this run rests on. */
+  readonly fixCount: number;
+  readonly topSpeedKmh: number;
   readonly recording: { readonly name: string; readonly sha256: string; readonly bytes: number };
   readonly curves: readonly AssessedCurve[];
   readonly findings: readonly Finding[];

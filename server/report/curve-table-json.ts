@@ -16,6 +16,8 @@ export interface CurveTableJson {
     readonly startUtcS: number;
     readonly durationS: number;
     readonly lengthM: number;
+    readonly fixCount: number;
+    readonly topSpeedKmh: number;
     readonly recording: { readonly name: string; readonly sha256: string; readonly bytes: number };
     readonly findings: ReportContext['runs'][number]['findings'];
   }[];
@@ -30,15 +32,19 @@ export function curveTableJson(context: ReportContext): CurveTableJson {
     title: context.title,
     cautions: context.cautions,
     setup: context.setup,
-    runs: context.runs.map(({ id, name, startUtcS, durationS, lengthM, recording, findings }) => ({
-      id,
-      name,
-      startUtcS,
-      durationS,
-      lengthM,
-      recording,
-      findings,
-    })),
+    runs: context.runs.map(
+      ({ id, name, startUtcS, durationS, lengthM, fixCount, topSpeedKmh, recording, findings }) => ({
+        id,
+        name,
+        startUtcS,
+        durationS,
+        lengthM,
+        fixCount,
+        topSpeedKmh,
+        recording,
+        findings,
+      }),
+    ),
     curves: context.runs.flatMap((run) =>
       run.curves.map(({ row, criteria }) => ({ ...roundRow(row), criteria: [...criteria] })),
     ),

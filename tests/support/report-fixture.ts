@@ -141,6 +141,8 @@ export function fixtureContext(curves: AssessedCurve[]): ReportContext {
         startUtcS: 1_750_000_000,
         durationS: 600,
         lengthM: 3000,
+        fixCount: 600,
+        topSpeedKmh: 94,
         recording: { name: 'morning.gpx', sha256: 'ab'.repeat(32), bytes: 1234 },
         curves,
         findings: [],
