@@ -1,0 +1,35 @@
+import type { Observations } from './observations.ts';
+
+/** Time over which the local strength of the curvature walk is judged, s, either side. */
+const HALF_WINDOW_S = 4;
+/** Weight of the log's own strength against the local finding, in units of a step's expectation. */
+const PRIOR_WEIGHT = 1;
+const LEAST_FACTOR = 0.1;
+const GREATEST_FACTOR = 30;
+
+/**
+ * Local factor on the strength of the curvature walk. The score of the strength of one step's noise is
+ * (found - expected) / 2, found = lambda' Q lambda and expected = trace(Q Lambda); their ratio over a window says by how much the
+ * local changes of curvature exceed what the log's average allows.
+ */
+export function adaptWalk(observations: Observations, found: Float32Array, expected: Float32Array): void {
+  const { count, timeS, walkFactor } = observations;
+  let from = 0;
+  let to = 0;
+  let sumFound = 0;
+  let sumExpected = 0;
+  for (let i = 0; i < count; i++) {
+    while (to < count && timeS[to]! <= timeS[i]! + HALF_WINDOW_S) {
+      sumFound += found[to]!;
+      sumExpected += expected[to]!;
+      to++;
+    }
+    while (timeS[from]! < timeS[i]! - HALF_WINDOW_S) {
+      sumFound -= found[from]!;
+      sumExpected -= expected[from]!;
+      from++;
+    }
+    const ratio = (PRIOR_WEIGHT + Math.max(0, sumFound)) / (PRIOR_WEIGHT + Math.max(0, sumExpected));
+    walkFactor[i] = Math.min(GREATEST_FACTOR, Math.max(LEAST_FACTOR, 2 * ratio - 1));
+  }
+}

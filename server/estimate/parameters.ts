@@ -1,0 +1,28 @@
+/** Parameters of the motion model and of the receiver's errors, as the filter uses them. */
+export interface Parameters {
+  /** Strength of the curvature walk in distance, 1/m^3: variance of curvature gained per metre over long distances. */
+  readonly curvatureWalk: number;
+  /** Length over which the change of curvature keeps its sign and size (about that of a transition), m. */
+  readonly changeLengthM: number;
+  /** Strength of the acceleration's random change, (m/s^2)^2 per second. */
+  readonly jerkNoise: number;
+  /** White position error per axis, m. */
+  readonly whiteM: number;
+  /** Diffusion of the wandering position error per axis, m^2/s. */
+  readonly diffusion: number;
+  /** Error of the time stamps, s; acts along the track. */
+  readonly stampSdS: number;
+  /** Sd of the speed observation, enlarged for its correlation at the log's rate, m/s. */
+  readonly speedMps: number;
+  readonly courseWhiteMps: number;
+  readonly courseSlowMps: number;
+  /** Correlation time of the slow Doppler error, s. */
+  readonly dopplerTimeS: number;
+  /** Course and speed refer to an instant this long before the position stamp, s. */
+  readonly lagS: number;
+}
+
+/** Relaxation time of the acceleration, s: braking and traction hold for several seconds. */
+export const ACCELERATION_TIME_S = 8;
+/** Correlation time assumed for the wandering position error; a log identifies only its diffusion, s. */
+export const WANDER_TIME_S = 120;
