@@ -86,5 +86,35 @@ export const CriterionResult = z.object({
 });
 export type CriterionResult = z.infer<typeof CriterionResult>;
 
-export const AssessedCurve = z.object({ row: CurveRow, criteria: z.array(CriterionResult) });
+/** A way to bring a curve within its limits, and what stands against it. */
+export const Cure = z.object({
+  kind: z.enum(['speed', 'cant', 'transition']),
+  /** Speed not to exceed, least cant, or least length of the transition. */
+  value: z.number(),
+  unit: z.enum(['km/h', 'mm', 'm']),
+  feasible: z.boolean(),
+  /** Why it is not feasible or not enough alone; empty otherwise. */
+  against: z.string(),
+  timeCostS: num,
+});
+export type Cure = z.infer<typeof Cure>;
+
+/** Modelled body motion with the roll as a damped oscillator. */
+export const BodyDynamics = z.object({
+  peakBodyMps2: z.number(),
+  /** Largest roll over the quasi-static one. */
+  dynamicFactor: z.number(),
+  peakRollDeg: z.number(),
+  /** Speed at which entry and exit of this curve excite the roll most, km/h; null without natural frequency. */
+  worstSpeedKmh: num,
+});
+export type BodyDynamics = z.infer<typeof BodyDynamics>;
+
+export const AssessedCurve = z.object({
+  row: CurveRow,
+  criteria: z.array(CriterionResult),
+  cures: z.array(Cure).optional(),
+  /** Absent when the vehicle's roll is not known. */
+  dynamics: BodyDynamics.optional(),
+});
 export type AssessedCurve = z.infer<typeof AssessedCurve>;

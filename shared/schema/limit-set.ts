@@ -45,6 +45,7 @@ export const LimitBand = z.object({
   normal: z.number().nullable(),
   exceptional: z.number().nullable(),
 });
+export type LimitBand = z.infer<typeof LimitBand>;
 
 export const Limit = z.object({
   criterion: CriterionId,

@@ -28,6 +28,10 @@ export const Setup = z.object({
   tier: z.enum(['normal', 'exceptional']),
   /** Two-sided confidence of intervals and advice, for example 0.95. */
   confidence: z.number().gt(0.5).lt(1),
+  /** Cant tried on single curves instead of the register's or the rule's; rail mm, road percent. */
+  cantTrials: z.array(z.object({ curve: z.number().int(), value: z.number() })).optional(),
+  /** Spacings of regular irregularities to look for resonance at, m: rail or expansion joints, slab lengths. */
+  irregularitiesM: z.array(z.number().positive()).optional(),
 });
 export type Setup = z.infer<typeof Setup>;
 
