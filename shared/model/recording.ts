@@ -21,6 +21,7 @@ export interface FixColumns {
   /** Horizontal accuracy as stated by the receiver, m. */
   readonly accuracyM: Float32Array | null;
   readonly hdop: Float32Array | null;
+  /** 255 not stated. */
   readonly satellites: Uint8Array | null;
   /** 0 no fix, 1 autonomous, 2 differential, 3 dead reckoning or propagated, 4 RTK fixed, 5 RTK float; 255 not stated. */
   readonly fixQuality: Uint8Array | null;

@@ -1,0 +1,39 @@
+import type { Recording, RecordingFormat } from '../../shared/model/recording.ts';
+import type { ByteSource } from './byte-source.ts';
+import { readGpx } from './gpx.ts';
+import { readNmea } from './nmea.ts';
+import type { ReadContext } from './options.ts';
+
+/** What a recogniser is shown of a file: its first bytes, as they are and as text (NULs removed). */
+export interface Head {
+  readonly bytes: Uint8Array;
+  readonly text: string;
+}
+
+export interface Format {
+  readonly name: RecordingFormat;
+  /** True when the content, whatever its file is called, is of this format. */
+  recognises(head: Head): boolean;
+  read(source: ByteSource, context: ReadContext): Promise<Recording>;
+}
+
+/** True when the first element of an XML document, prefix aside, is `name`. */
+const rootIs = (name: string) => {
+  const root = new RegExp(`<(?:[\\w.-]+:)?${name}[\\s/>]`, 'i');
+  const any = /<(?![?!])[^>]{0,200}/;
+  return ({ text }: Head): boolean => {
+    const bare = text.replace(/<!--[\s\S]*?-->/g, '');
+    const first = any.exec(bare);
+    return first !== null && bare.trimStart().startsWith('<') && root.test(`${first[0]}>`);
+  };
+};
+
+/** Formats in the order in which they are asked; the first that recognises the content reads it. */
+export const FORMATS: readonly Format[] = [
+  { name: 'gpx', recognises: rootIs('gpx'), read: readGpx },
+  {
+    name: 'nmea',
+    recognises: ({ text }) => /\$[A-Z]{2}(?:RMC|GGA|GNS|GLL|VTG|GSA|GSV|GST|ZDA),/.test(text),
+    read: readNmea,
+  },
+];
