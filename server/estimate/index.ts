@@ -6,10 +6,10 @@ import { writeChainage } from './chainage.ts';
 import { describe } from './findings.ts';
 import { USE, observe } from './observations.ts';
 import { describeQuality } from './quality.ts';
-import { reweigh } from './robust.ts';
+import { reviewFix, weighDoppler } from './robust.ts';
 import { smooth, smoothedCovariances } from './smoother.ts';
 import { GATE, tune } from './tuning.ts';
-import { WANDER_TIME_S } from './parameters.ts';
+import { WANDER_TIME_S, walkAt } from './parameters.ts';
 import { wrapAngle } from './motion-filter.ts';
 
 export interface EstimateOptions {
@@ -54,7 +54,8 @@ export function estimateMotion(run: Run, options: EstimateOptions = {}): { motio
   const tuned = tune(observations, run.intervalS, run.resolution.timeS >= 0.5);
   const { parameters } = tuned;
   report(0.2);
-  const walkVariance = parameters.curvatureWalk / (2 * parameters.changeLengthM);
+  const walk = { walk: 0, lengthM: 1 };
+  const residuals = { speed: new Float32Array(count), course: new Float32Array(count) };
   const walkFound = new Float32Array(count);
   const walkExpected = new Float32Array(count);
   const first = smooth(
@@ -71,14 +72,16 @@ export function estimateMotion(run: Run, options: EstimateOptions = {}): { motio
       columns.curvaturePerM[i] = state[5]!;
       // Score of the curvature's noise in the step into i: of c itself, which carries nearly all of it.
       const d = i > 0 ? state[3]! * (observations.timeS[i]! - observations.timeS[i - 1]!) : 0;
-      const k = walkVariance * (1 - Math.exp((-2 * Math.max(0, d)) / parameters.changeLengthM));
+      walkAt(parameters, state[3]!, walk);
+      const k = (walk.walk / (2 * walk.lengthM)) * (1 - Math.exp((-2 * Math.max(0, d)) / walk.lengthM));
       walkFound[i] = k * lambda[6]! ** 2;
       walkExpected[i] = k * Lambda[27]!;
-      reweigh(observations, parameters, i, state);
+      reviewFix(observations, parameters, i, state, residuals);
     },
     (share) => report(0.2 + 0.35 * share),
   );
-  adaptWalk(observations, walkFound, walkExpected);
+  weighDoppler(residuals, columns.dopplerVarianceFactor);
+  adaptWalk(observations, parameters, columns.speedMps, walkFound, walkExpected);
   const pairs = [
     [0, [0]],
     [1, [1]],

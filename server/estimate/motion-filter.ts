@@ -10,7 +10,7 @@ import {
 import type { Observations } from './observations.ts';
 import { LEAST_SPEED_FOR_COURSE_MPS, USE, lowSpeedVariance } from './observations.ts';
 import type { Parameters } from './parameters.ts';
-import { ACCELERATION_TIME_S } from './parameters.ts';
+import { ACCELERATION_TIME_S, walkAt } from './parameters.ts';
 import { writeStart } from './start.ts';
 
 /** Trajectory about which the motion is linearised; columns of the run's length. */
@@ -41,7 +41,9 @@ export const RECORD = {
   OBSERVATIONS: STATES + PACKED + COEFFICIENTS,
   /** Of one observation: gain (8), innovation over its variance, 1 / variance (0 = absent), three coefficients. */
   OBSERVATION_SIZE: STATES + 5,
-  SIZE: STATES + PACKED + COEFFICIENTS + 4 * (STATES + 5),
+  /** 1 where the filter started afresh at the fix. */
+  STARTS: STATES + PACKED + COEFFICIENTS + 4 * (STATES + 5),
+  SIZE: STATES + PACKED + COEFFICIENTS + 4 * (STATES + 5) + 1,
 } as const;
 
 /** Longest step of the linearisation, s; a gap is crossed in several. */
@@ -54,6 +56,25 @@ const FAR_M = 60;
 /** Smallest process variances of heading and curvature in a step, so that nothing is singular at standstill. */
 const LEAST_HEADING_VARIANCE = 1e-14;
 const LEAST_CURVATURE_VARIANCE = 1e-16;
+/** Positions beyond the gate in a row after which the position error is taken to have leapt. */
+const MISSED_POSITIONS = 3;
+const LOST_SPEED_VARIANCE = 4;
+const LOST_ACCELERATION_VARIANCE = 1;
+const LOST_HEADING_VARIANCE = 0.3;
+const LOST_LATERAL_MPS2 = 2;
+/**
+ * Beyond this squared standardised innovation the deviance grows by TAIL ln(e^2 / S) only: the density's tail falls like a
+ * power, fast enough to be a density, so that outliers neither pass for noise nor become free.
+ */
+const TAIL_FROM = 9;
+const TAIL = 4;
+/** Doppler readings are rarely outliers; a manoeuvre that the model thinks unlikely must not look like one. */
+const DOPPLER_GATE = 100;
+/** Beyond these no vehicle on rails or road moves: a radius of 3 m, 15 m/s^2. */
+const GREATEST_CURVATURE_PER_M = 0.33;
+const GREATEST_ACCELERATION_MPS2 = 15;
+/** What a loss of the vehicle costs a set of parameters in the search. */
+const RESTART_DEVIANCE = 100;
 const TWO_PI = 2 * Math.PI;
 
 /** Angle brought into (-pi, pi]. */
@@ -72,6 +93,8 @@ export function wrapAngle(angle: number): number {
 export class MotionFilter {
   readonly state = new Float64Array(STATES);
   readonly covariance = new Float64Array(PACKED);
+  /** Successive fixes whose position lay beyond the gate: part of the filter's state. */
+  readonly missed = new Int32Array(1);
   /** Sum over observations of ln S + rho(e^2 / S), rho quadratic up to the gate and logarithmic beyond. */
   deviance = 0;
   /** Number of observations in `deviance`. */
@@ -83,6 +106,7 @@ export class MotionFilter {
   readonly #parameters: Parameters;
   readonly #reference: Reference | null;
   readonly #gate: number;
+  readonly #walk = { walk: 0, lengthM: 1 };
   #stepS = NaN;
   #decayA = 1;
   #gainA = 0;
@@ -106,22 +130,38 @@ export class MotionFilter {
     const { state, covariance } = this;
     for (let i = from; i < to; i++) {
       const at = (i - from) * RECORD.SIZE;
-      if ((use[i]! & USE.RESTART) !== 0) {
+      const starts = (use[i]! & USE.RESTART) !== 0 || this.#lost();
+      if (starts) {
         writeStart(this.#observations, this.#parameters, i, state, covariance);
         this.#cos = Math.cos(state[2]!);
         this.#sin = Math.sin(state[2]!);
         this.#whole.fill(0);
+        this.missed.fill(0);
       } else {
         this.#predict(i, timeS[i]! - timeS[i - 1]!);
+        if (this.missed[0]! >= MISSED_POSITIONS) this.#recover(i);
       }
       if (record !== null) {
         record.set(state, at + RECORD.STATE);
         record.set(covariance, at + RECORD.COVARIANCE);
         record.set(this.#whole, at + RECORD.TRANSITION);
+        record[at + RECORD.STARTS] = starts ? 1 : 0;
         for (let k = 0; k < 4; k++) record[at + RECORD.OBSERVATIONS + k * RECORD.OBSERVATION_SIZE + STATES + 1] = 0;
       }
       this.#observe(i, record, at + RECORD.OBSERVATIONS);
     }
+  }
+
+  /** No vehicle moves as the state says: the filter has locked on to something else and must start afresh. */
+  #lost(): boolean {
+    const v = this.state[3]!;
+    const kappa = this.state[5]!;
+    const lost = Math.abs(kappa) > GREATEST_CURVATURE_PER_M || Math.abs(v * v * kappa) > GREATEST_ACCELERATION_MPS2;
+    if (lost || Math.abs(this.state[4]!) > GREATEST_ACCELERATION_MPS2) {
+      this.deviance += RESTART_DEVIANCE;
+      return true;
+    }
+    return false;
   }
 
   #predict(i: number, gapS: number): void {
@@ -169,9 +209,10 @@ export class MotionFilter {
     const decayA = this.#decayA;
     const gainA = this.#gainA;
     const decayDoppler = this.#decayDoppler;
-    const { curvatureWalk, changeLengthM } = this.#parameters;
+    walkAt(this.#parameters, v, this.#walk);
+    const changeLengthM = this.#walk.lengthM;
     // Stationary variance of c whose integral spreads like the curvature walk.
-    const variance = (curvatureWalk * this.#observations.walkFactor[i]!) / (2 * changeLengthM);
+    const variance = (this.#walk.walk * this.#observations.walkFactor[i]!) / (2 * changeLengthM);
     const half = 0.5 * h * h;
     f[COEFFICIENT.V_BY_A] = gainA;
     f[COEFFICIENT.DECAY_A] = decayA;
@@ -218,7 +259,7 @@ export class MotionFilter {
       dV += gainA * dA;
       dA *= decayA;
       predictCovariance(this.covariance, f, 0);
-      this.#addProcessNoise(d, h, cos, sin, variance, x, decayC);
+      this.#addProcessNoise(d, h, cos, sin, variance, changeLengthM, x, decayC);
       if (step === 0) whole.set(f);
       else compose(whole, f);
       this.#cos = cos;
@@ -237,9 +278,18 @@ export class MotionFilter {
    * x = d over its correlation length, integrated once to kappa and twice to theta (Singer's model, IEEE Trans. AES-6, 1970,
    * p. 473, with distance for time). Along the track: jerk over h. Besides the diffusion of the position error and the Doppler error.
    */
-  #addProcessNoise(d: number, h: number, cos: number, sin: number, variance: number, x: number, e: number): void {
+  #addProcessNoise(
+    d: number,
+    h: number,
+    cos: number,
+    sin: number,
+    variance: number,
+    l: number,
+    x: number,
+    e: number,
+  ): void {
     const p = this.covariance;
-    const { jerkNoise, diffusion, courseSlowMps, changeLengthM: l } = this.#parameters;
+    const { jerkNoise, diffusion, courseSlowMps } = this.#parameters;
     let cc: number;
     let kappaC: number;
     let kappaKappa: number;
@@ -303,11 +353,36 @@ export class MotionFilter {
     p[35]! += fresh * courseSlowMps * courseSlowMps;
   }
 
+  /**
+   * Positions beyond the gate several times in a row are no outliers: the position error has leapt (multipath, another mode of
+   * the receiver) or the filter has lost the vehicle. The position is set free, and what no Doppler reading holds with it.
+   */
+  #recover(i: number): void {
+    const p = this.covariance;
+    const use = this.#observations.use[i]!;
+    if ((use & USE.POSITION) === 0) return;
+    const dx = this.#observations.xM[i]! - this.state[0]!;
+    const dy = this.#observations.yM[i]! - this.state[1]!;
+    p[0]! += dx * dx + dy * dy;
+    p[2]! += dx * dx + dy * dy;
+    if ((use & (USE.SPEED | USE.STANDING)) === 0) {
+      p[9]! += LOST_SPEED_VARIANCE;
+      p[14]! += LOST_ACCELERATION_VARIANCE;
+    }
+    if ((use & (USE.COURSE | USE.STANDING)) === 0) {
+      const v = Math.max(2, this.state[3]!);
+      p[5]! += LOST_HEADING_VARIANCE;
+      p[20]! += (LOST_LATERAL_MPS2 / (v * v)) ** 2;
+    }
+    this.missed[0] = 0;
+  }
+
   #observe(i: number, record: Float64Array | null, at: number): void {
     const o = this.#observations;
     const use = o.use[i]!;
     const { state, covariance: p } = this;
     const { whiteM, stampSdS, lagS, speedMps, courseWhiteMps } = this.#parameters;
+    const gate = this.#gate;
     const g = this.#seen;
     const size = RECORD.OBSERVATION_SIZE;
     if ((use & USE.POSITION) !== 0) {
@@ -318,21 +393,24 @@ export class MotionFilter {
       column2(p, cos, sin, g);
       let variance = cos * g[0]! + sin * g[1]! + white + stamp * stamp;
       let innovation = cos * (o.xM[i]! - state[0]!) + sin * (o.yM[i]! - state[1]!);
-      this.#take(innovation, variance, record, at, cos, sin, 0);
+      let gated = innovation * innovation > gate * variance;
+      this.#take(innovation, variance, record, at, cos, sin, 0, gate);
       column2(p, -sin, cos, g);
       variance = -sin * g[0]! + cos * g[1]! + white;
       innovation = -sin * (o.xM[i]! - state[0]!) + cos * (o.yM[i]! - state[1]!);
-      this.#take(innovation, variance, record, at + size, -sin, cos, 0);
+      gated ||= innovation * innovation > gate * variance;
+      this.#take(innovation, variance, record, at + size, -sin, cos, 0, gate);
+      this.missed[0] = gated ? this.missed[0]! + 1 : 0;
     }
     if ((use & USE.STANDING) !== 0) {
       column(p, 0, 3, g);
-      this.#take(-state[3]!, g[3]! + STANDING_SD_MPS ** 2, record, at + 2 * size, 1, 0, 0);
+      this.#take(-state[3]!, g[3]! + STANDING_SD_MPS ** 2, record, at + 2 * size, 1, 0, 0, DOPPLER_GATE);
     } else if ((use & USE.SPEED) !== 0) {
       const speed = o.speedMps![i]!;
       const noise = (speedMps * speedMps + o.speedRounding) * o.dopplerFactor[i]! + lowSpeedVariance(speed);
       columnSpeed(p, lagS, g);
       const variance = g[3]! - lagS * g[4]! + noise;
-      this.#take(speed - (state[3]! - lagS * state[4]!), variance, record, at + 2 * size, 1, -lagS, 0);
+      this.#take(speed - (state[3]! - lagS * state[4]!), variance, record, at + 2 * size, 1, -lagS, 0, DOPPLER_GATE);
     }
     if ((use & USE.COURSE) !== 0) {
       const reference = this.#reference;
@@ -346,7 +424,7 @@ export class MotionFilter {
       let expected = state[2]! + back * state[5]! + slow * state[7]!;
       if (reference !== null && lagS !== 0) expected += laggedExcess(reference, o.timeS, i, lagS, back);
       const innovation = wrapAngle(o.northRad[i]! - o.courseRad![i]! - expected);
-      this.#take(innovation, variance, record, at + 3 * size, 1, back, slow);
+      this.#take(innovation, variance, record, at + 3 * size, 1, back, slow, DOPPLER_GATE);
     }
     if (state[3]! < 0) state[3] = 0;
   }
@@ -360,18 +438,14 @@ export class MotionFilter {
     first: number,
     second: number,
     third: number,
+    gate: number,
   ): void {
     const g = this.#seen;
     const { state } = this;
     const square = innovation * innovation;
     const ratio = square / variance;
-    let s = variance;
-    if (ratio > this.#gate) {
-      s = square / this.#gate;
-      this.deviance += Math.log(s) + this.#gate;
-    } else {
-      this.deviance += Math.log(s) + ratio;
-    }
+    const s = ratio > gate ? square / gate : variance;
+    this.deviance += Math.log(variance) + (ratio > TAIL_FROM ? TAIL_FROM + TAIL * Math.log(ratio / TAIL_FROM) : ratio);
     this.observationCount++;
     const inverse = 1 / s;
     const scaled = innovation * inverse;

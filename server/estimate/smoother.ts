@@ -2,11 +2,12 @@ import { PACKED, STATES, predictAdjoint, predictAdjointVector, timesVector } fro
 import type { Reference } from './motion-filter.ts';
 import { MotionFilter, RECORD, SEEN } from './motion-filter.ts';
 import type { Observations } from './observations.ts';
-import { USE } from './observations.ts';
 import type { Parameters } from './parameters.ts';
 
 /** Fixes between checkpoints: one block's records fit in a processor's second-level cache. */
 const BLOCK = 128;
+/** Numbers of a checkpoint: state, covariance, count of misses. */
+const CHECKPOINT = STATES + PACKED + 1;
 
 /** What is kept of each fix on the way back. Called from the last fix to the first. */
 export interface FixSink {
@@ -35,14 +36,15 @@ export function smooth(
   sink: FixSink,
   onBlock: (share: number) => void,
 ): { readonly finite: boolean; readonly deviance: number; readonly observationCount: number } {
-  const { count, use } = observations;
+  const { count } = observations;
   const blocks = Math.ceil(count / BLOCK);
-  const checkpoints = new Float64Array(blocks * (STATES + PACKED));
+  const checkpoints = new Float64Array(blocks * CHECKPOINT);
   const filter = new MotionFilter(observations, parameters, reference, gate);
   const { state, covariance } = filter;
   for (let b = 0; b < blocks; b++) {
-    checkpoints.set(state, b * (STATES + PACKED));
-    checkpoints.set(covariance, b * (STATES + PACKED) + STATES);
+    checkpoints.set(state, b * CHECKPOINT);
+    checkpoints.set(covariance, b * CHECKPOINT + STATES);
+    checkpoints.set(filter.missed, b * CHECKPOINT + STATES + PACKED);
     filter.advance(b * BLOCK, Math.min(count, (b + 1) * BLOCK), null);
     if (!Number.isFinite(state[0]! + state[2]! + state[3]! + state[5]! + covariance[20]!)) {
       return { finite: false, deviance: NaN, observationCount: 0 };
@@ -59,9 +61,10 @@ export function smooth(
   for (let b = blocks - 1; b >= 0; b--) {
     const from = b * BLOCK;
     const to = Math.min(count, from + BLOCK);
-    const at0 = b * (STATES + PACKED);
+    const at0 = b * CHECKPOINT;
     state.set(checkpoints.subarray(at0, at0 + STATES));
     covariance.set(checkpoints.subarray(at0 + STATES, at0 + STATES + PACKED));
+    filter.missed.set(checkpoints.subarray(at0 + STATES + PACKED, at0 + CHECKPOINT));
     filter.advance(from, to, record);
     for (let i = to - 1; i >= from; i--) {
       const at = (i - from) * RECORD.SIZE;
@@ -75,7 +78,7 @@ export function smooth(
         return { finite: false, deviance: NaN, observationCount: 0 };
       }
       sink(i, smoothed, record, at, lambda, Lambda);
-      if ((use[i]! & USE.RESTART) !== 0) {
+      if (record[at + RECORD.STARTS] === 1) {
         lambda.fill(0);
         Lambda.fill(0);
       } else {

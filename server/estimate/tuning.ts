@@ -12,7 +12,10 @@ const STRETCHES = 8;
 /** Interval to which a faster log is thinned, s: Doppler errors a second apart are nearly independent. */
 const THINNED_INTERVAL_S = 1;
 /** Square of the standardised innovation beyond which an observation counts as an outlier. */
-export const GATE = 9;
+export const GATE = 25;
+
+/** Gain of deviance that a dependence on speed must bring. */
+const EXPONENT_MARGIN = 30;
 
 interface Prior {
   readonly centre: number;
@@ -85,6 +88,8 @@ function channelUsed(observations: Observations, bit: number): boolean {
 /** Parameters before anything is known of the log. */
 export const STARTING_PARAMETERS: Parameters = {
   curvatureWalk: 1e-7,
+  walkExponent: 0,
+  typicalSpeedMps: 10,
   changeLengthM: 20,
   jerkNoise: PRIOR.jerkNoise.centre,
   whiteM: PRIOR.whiteM.centre,
@@ -116,15 +121,17 @@ export function tune(observations: Observations, intervalS: number, wholeSecondS
   const hasCourse = channelUsed(thin, USE.COURSE);
 
   const typicalSpeed = typicalSpeedMps(thin);
-  const start = { ...STARTING_PARAMETERS, changeLengthM: typicalSpeed };
+  const start = { ...STARTING_PARAMETERS, typicalSpeedMps: typicalSpeed, changeLengthM: typicalSpeed };
   let best: Parameters = start;
   let bestValue = Infinity;
-  for (const curvatureWalk of WALK_STARTS) {
-    const trial = { ...start, curvatureWalk };
-    const value = deviance(thin, trial);
-    if (value < bestValue) {
-      best = trial;
-      bestValue = value;
+  for (const walkExponent of [0, 2, 4] as const) {
+    for (const curvatureWalk of WALK_STARTS) {
+      const trial = { ...start, walkExponent, curvatureWalk };
+      const value = deviance(thin, trial) + (walkExponent === 0 ? 0 : EXPONENT_MARGIN);
+      if (value < bestValue) {
+        best = trial;
+        bestValue = value;
+      }
     }
   }
   best = refine(thin, best, typicalSpeed, hasSpeed, hasCourse, 100);
@@ -237,28 +244,22 @@ function splitErrors(full: Observations, from: Parameters, hasCourse: boolean): 
 /** Delay of course and speed against the positions, by the likelihood: a coarse scan, then the vertex of a parabola. */
 function findLag(thin: Observations, parameters: Parameters): { readonly lag: number; readonly sd: number } {
   const at = (lagS: number): number => deviance(thin, { ...parameters, lagS });
-  const coarse = [-0.5, 0, 0.5, 1, 1.5];
-  const values = coarse.map(at);
-  let k = 0;
-  for (let j = 1; j < coarse.length; j++) if (values[j]! < values[k]!) k = j;
-  let centre = coarse[k]!;
-  let middle = values[k]!;
-  let step = 0.25;
-  let vertex = { offset: 0, curvature: 0 };
-  for (let round = 0; round < 2; round++) {
-    const below = at(centre - step);
-    const above = at(centre + step);
-    vertex = parabola(below, middle, above, step);
-    if (round === 0) {
-      centre += Math.max(-step, Math.min(step, vertex.curvature > 0 ? vertex.offset : below < above ? -step : step));
-      middle = at(centre);
-      step = 0.12;
-    }
-  }
-  if (!(vertex.curvature > 0)) return { lag: 0, sd: 1 };
+  const unknown = { lag: 0, sd: 1 };
+  let grid = [-0.5, 0, 0.5, 1, 1.5];
+  let values = grid.map(at);
+  let k = values.indexOf(Math.min(...values));
+  const centre = grid[k]!;
+  grid = [centre - 0.4, centre - 0.2, centre, centre + 0.2, centre + 0.4];
+  values = grid.map((lag, j) => (j === 2 ? values[k]! : at(lag)));
+  k = Math.max(1, Math.min(3, values.indexOf(Math.min(...values))));
+  const fine = parabola(values[k - 1]!, values[k]!, values[k + 1]!, 0.2);
+  const wide = parabola(values[0]!, values[2]!, values[4]!, 0.4);
+  const vertex = fine.curvature > 0 ? { ...fine, from: grid[k]! } : { ...wide, from: centre };
+  if (!(vertex.curvature > 0)) return unknown;
   // The deviance is twice the negative logarithm of the likelihood: variance = 2 / its second derivative.
-  const lag = Math.max(-1.5, Math.min(1.5, centre + Math.max(-step, Math.min(step, vertex.offset))));
-  return { lag, sd: Math.sqrt(2 / vertex.curvature) };
+  const lag = vertex.from + Math.max(-0.4, Math.min(0.4, vertex.offset));
+  if (Math.abs(lag) > 1.5) return unknown;
+  return { lag, sd: Math.max(0.01, Math.sqrt(2 / vertex.curvature)) };
 }
 
 function parabola(below: number, middle: number, above: number, step: number): { offset: number; curvature: number } {

@@ -157,11 +157,11 @@ export function simulateRun(
         v = 0;
         a = 0;
       } else {
-        const wanted = Math.min(cruise, Math.sqrt(Math.max(0, 2 * 0.7 * toStop)) + 0.05);
+        const wanted = Math.min(cruise, Math.max(0.3, Math.sqrt(Math.max(0, 2 * 0.55 * (toStop - 1.5 * v)))));
         const target = Math.max(-0.9, Math.min(0.7, (wanted - v) / 1.5));
         a += Math.max(-0.7 * step, Math.min(0.7 * step, target - a));
         v = Math.max(0, v + a * step);
-        if (toStop < 0.5 || (v < 0.08 && toStop < 5)) {
+        if (toStop < 0.3 || (v < 0.31 && toStop < 2 && a <= 0)) {
           dwell = 15 + 30 * random();
           nextStop = chainage + f.stopEvery * (0.5 + random());
           v = 0;
