@@ -1,5 +1,7 @@
 import type { Recording, RecordingFormat } from '../../shared/model/recording.ts';
 import type { ByteSource } from './byte-source.ts';
+import { looksDelimited } from './delimited/dialect.ts';
+import { readDelimited } from './delimited/read.ts';
 import { readGpx } from './gpx.ts';
 import { readNmea } from './nmea.ts';
 import type { ReadContext } from './options.ts';
@@ -35,5 +37,10 @@ export const FORMATS: readonly Format[] = [
     name: 'nmea',
     recognises: ({ text }) => /\$[A-Z]{2}(?:RMC|GGA|GNS|GLL|VTG|GSA|GSV|GST|ZDA),/.test(text),
     read: readNmea,
+  },
+  {
+    name: 'csv',
+    recognises: ({ text }) => !/^\s*[<{[]/.test(text) && looksDelimited(text),
+    read: readDelimited,
   },
 ];

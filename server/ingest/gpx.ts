@@ -1,5 +1,6 @@
 import type { Recording, Waypoint } from '../../shared/model/recording.ts';
 import type { ByteSource } from './byte-source.ts';
+import { decimal } from './decimal.ts';
 import { ENCODING_NAMES, type TextNote } from './encoding.ts';
 import { counted, FindingLog } from './finding-log.ts';
 import { courseFromDegrees, FixBuilder, wrapLongitude } from './fix-builder.ts';
@@ -16,12 +17,6 @@ const FIX_QUALITY: Record<string, number> = { none: 0, '2d': 1, '3d': 1, dgps: 2
 
 function escapeXml(text: string): string {
   return text.replace(/&/g, '&amp;').replace(/</g, '&lt;').replace(/>/g, '&gt;').replace(/"/g, '&quot;');
-}
-
-/** A decimal number and nothing else; `Number` alone would take '' and '0x10'. */
-export function decimal(text: string): number {
-  const trimmed = text.trim();
-  return /^[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?$/.test(trimmed) ? Number(trimmed) : NaN;
 }
 
 /**

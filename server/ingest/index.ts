@@ -1,11 +1,15 @@
 import { BendbookError, type Fault } from '../../shared/model/fault.ts';
 import type { Recording } from '../../shared/model/recording.ts';
+import type { ColumnNames } from '../../shared/schema/api.ts';
 import { requireUsable } from './acceptance.ts';
 import { fileSource, readHead, type ByteSource } from './byte-source.ts';
+import { previewDelimited, type DelimitedPreview } from './delimited/preview.ts';
 import { detectEncoding } from './encoding.ts';
 import { FORMATS, type Head } from './formats.ts';
 import { DEFAULT_MAX_FIXES, type IngestOptions, type IngestResult, type ReadContext } from './options.ts';
 
+export type { DelimitedPreview } from './delimited/preview.ts';
+export { COLUMN_FIELDS } from './delimited/columns.ts';
 export type { IngestOptions, IngestResult } from './options.ts';
 
 /** Enough to see past a preamble and the first of other messages. */
@@ -68,4 +72,21 @@ export async function ingestFile(path: string, options: IngestOptions): Promise<
     refused.push({ name: options.name, fault: faultOf(error, options.name, options.signal) });
   }
   return { recordings, refused };
+}
+
+const PREVIEW_ROWS = 20;
+
+/**
+ * First look at a delimited file: what each column is taken for, the headers and the first rows.
+ * Null for files of any other format. Throws BendbookError when the file cannot be read.
+ */
+export async function previewFile(
+  path: string,
+  name: string,
+  columns: ColumnNames = {},
+): Promise<DelimitedPreview | null> {
+  const source = await fileSource(path, name);
+  const head = await headOf(source);
+  const format = FORMATS.find(({ recognises }) => recognises(head));
+  return format?.name === 'csv' ? await previewDelimited(source, columns, PREVIEW_ROWS) : null;
 }

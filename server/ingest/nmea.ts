@@ -1,5 +1,6 @@
 import type { Recording } from '../../shared/model/recording.ts';
 import type { ByteSource } from './byte-source.ts';
+import { readDecimal } from './decimal.ts';
 import { asciiCompatibleBytes, ENCODING_NAMES, type TextNote } from './encoding.ts';
 import { counted, FindingLog } from './finding-log.ts';
 import { courseFromDegrees, FixBuilder } from './fix-builder.ts';
@@ -11,7 +12,7 @@ const DAY_S = 86400;
 const KNOT_MPS = 1852 / 3600;
 const KMH_MPS = 1 / 3.6;
 
-const [LF, CR, DOLLAR, STAR, COMMA, DOT, MINUS] = [10, 13, 36, 42, 44, 46, 45];
+const [LF, CR, DOLLAR, STAR, COMMA, DOT] = [10, 13, 36, 42, 44, 46];
 
 /** Sentence type as a number: its three letters. */
 const code = (letters: string) => (letters.charCodeAt(0) << 16) | (letters.charCodeAt(1) << 8) | letters.charCodeAt(2);
@@ -385,33 +386,6 @@ class NmeaReader {
     const minutes = readDecimal(this.#bytes, at + degreeDigits, end);
     return minutes < 60 ? degrees + minutes / 60 : NaN;
   }
-}
-
-const POWERS = Array.from({ length: 23 }, (_, i) => 10 ** i);
-
-/**
- * Digits with at most one point and a leading minus, as text: exact (correctly rounded) up to 15 digits,
- * as both the digits and the power of ten are then exact doubles; longer ones by the language itself.
- */
-export function readDecimal(bytes: Uint8Array, start: number, end: number): number {
-  let at = start;
-  const negative = bytes[at] === MINUS;
-  if (negative) at++;
-  if (at >= end) return NaN;
-  let value = 0;
-  let point = -1;
-  for (let p = at; p < end; p++) {
-    const digit = bytes[p]! - 48;
-    if (digit >= 0 && digit <= 9) value = value * 10 + digit;
-    else if (bytes[p] === DOT && point < 0) point = p;
-    else return NaN;
-  }
-  const decimals = point < 0 ? 0 : end - point - 1;
-  const digits = end - at - (point < 0 ? 0 : 1);
-  if (digits === 0) return NaN;
-  if (digits > 15) return digits > 40 ? NaN : Number(String.fromCharCode(...bytes.subarray(start, end)));
-  if (decimals > 0) value /= POWERS[decimals]!;
-  return negative ? -value : value;
 }
 
 /**
