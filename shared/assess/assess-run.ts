@@ -8,8 +8,11 @@ import { curveCases } from './cases.ts';
 import { cautionsFor } from './cautions.ts';
 
 export interface AssessOptions {
-  /** False leaves the working lines of the criteria empty; all figures stay the same. Default true. */
-  readonly working?: boolean;
+  /**
+   * Curves whose criteria get their working lines: all (true, the default), none, or those numbered. Figures are the same
+   * either way; without the lines a line of 500 curves recomputes within a frame or two.
+   */
+  readonly working?: boolean | readonly number[];
 }
 
 export interface RunAssessment {
@@ -25,8 +28,11 @@ export interface RunAssessment {
  */
 export function assessRun(passages: RunPassages, setup: Setup, options: AssessOptions = {}): RunAssessment {
   const { cases, resolved } = curveCases(passages, setup);
-  const withWorking = options.working ?? true;
-  const curves = cases.map((curveCase) => assessCurve(passages.run, curveCase, setup, withWorking));
+  const working = options.working ?? true;
+  const curves = cases.map((curveCase) => {
+    const withWorking = typeof working === 'boolean' ? working : working.includes(curveCase.facts.passage.curve.number);
+    return assessCurve(passages.run, curveCase, setup, withWorking);
+  });
   const findings: Finding[] = [];
   if (setup.register !== null && resolved !== null) {
     findings.push(

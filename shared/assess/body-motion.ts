@@ -32,8 +32,8 @@ export interface BodyModel {
 
 /** Sampling of the windows, s; the windows of EN 12299 are whole numbers of it. */
 const GRID_S = 0.1;
-/** Bounds the work on a passage with a crawl: longer than this (s) nothing is gained for comfort. */
-const LONGEST_S = 600;
+/** Speed taken at a start or stop within a passage, m/s. */
+const SLOWEST_MPS = 1;
 
 /** Curvature in favour of the curve and cant ratio at a chainage, from the fitted geometry with effective transitions. */
 interface Shape {
@@ -61,43 +61,69 @@ function shapeOf(facts: CurveFacts, cantRatio: number, cantRatioBefore: number, 
   };
 }
 
-function ramp(shape: Shape, values: readonly [number, number, number], s: number): number {
-  const [a, b, c, d] = shape.s;
-  if (s <= a) return values[0];
-  if (s < b) return values[0] + ((values[1] - values[0]) * (s - a)) / (b - a);
-  if (s <= c) return values[1];
-  if (s < d) return values[1] + ((values[2] - values[1]) * (s - c)) / (d - c);
-  return values[2];
+/** Columns of the nodes, kept between calls: a page assesses hundreds of curves a second and they need not be made anew. */
+interface Nodes {
+  t: Float64Array;
+  s: Float64Array;
+  v: Float64Array;
+  drive: Float64Array;
+  lean: Float64Array;
+  phi: Float64Array;
+  rate: Float64Array;
+  integral: Float64Array;
+  count: number;
 }
 
-/** Nodes of time and chainage through the passage, with every junction and steps short against the roll's period. */
-function nodes(facts: CurveFacts, shape: Shape, stepS: number): { t: number[]; s: number[]; v: number[] } {
+function makeNodes(size: number): Nodes {
+  const column = (): Float64Array => new Float64Array(size);
+  return {
+    t: column(),
+    s: column(),
+    v: column(),
+    drive: column(),
+    lean: column(),
+    phi: column(),
+    rate: column(),
+    integral: column(),
+    count: 0,
+  };
+}
+
+/** Bounds the work on a passage with a crawl: more nodes than this are not laid, and the rest of the passage is left out. */
+const MOST_NODES = 16_384;
+const scratch = makeNodes(MOST_NODES);
+
+/** Lays nodes of time, chainage and speed through the passage, with every junction and steps short against the roll's period. */
+function layNodes(facts: CurveFacts, shape: Shape, stepS: number, into: Nodes): void {
   const { chainageM, speedMps } = facts.passage;
-  const n = chainageM.length;
-  const t = [0];
-  const s = [Math.min(shape.s[0], chainageM[0]!)];
-  const v = [Math.max(speedMps[0]!, 1)];
-  const breaks = shape.s;
+  const { t, s, v } = into;
+  const stations = chainageM.length;
+  let n = 1;
+  t[0] = 0;
+  s[0] = Math.min(shape.s[0], chainageM[0]!);
+  v[0] = Math.max(speedMps[0]!, SLOWEST_MPS);
   const advance = (toM: number, toV: number): void => {
-    const fromM = s[s.length - 1]!;
-    const fromV = v[v.length - 1]!;
-    const fromT = t[t.length - 1]!;
+    const fromM = s[n - 1]!;
+    const fromV = v[n - 1]!;
+    const fromT = t[n - 1]!;
     const ds = toM - fromM;
-    if (!(ds > 1e-9) || fromT > LONGEST_S) return;
+    if (!(ds > 1e-9)) return;
     const dt = (2 * ds) / (fromV + toV);
     const steps = Math.ceil(dt / stepS);
+    if (n + steps > MOST_NODES) return;
     const a = (toV - fromV) / dt;
     for (let k = 1; k <= steps; k++) {
       const tau = (dt * k) / steps;
-      t.push(fromT + tau);
-      s.push(fromM + fromV * tau + (a * tau * tau) / 2);
-      v.push(fromV + a * tau);
+      t[n] = fromT + tau;
+      s[n] = fromM + fromV * tau + (a * tau * tau) / 2;
+      v[n] = fromV + a * tau;
+      n++;
     }
   };
   const walk = (toM: number, toV: number): void => {
-    const fromM = s[s.length - 1]!;
-    const fromV = v[v.length - 1]!;
-    for (const junction of breaks) {
+    const fromM = s[n - 1]!;
+    const fromV = v[n - 1]!;
+    for (const junction of shape.s) {
       if (junction > fromM + 1e-6 && junction < toM - 1e-6) {
         // Speed is interpolated by v^2 over distance: constant acceleration between stations.
         const share = (junction - fromM) / (toM - fromM);
@@ -106,11 +132,11 @@ function nodes(facts: CurveFacts, shape: Shape, stepS: number): { t: number[]; s
     }
     advance(toM, toV);
   };
-  for (let i = 0; i < n; i++) walk(chainageM[i]!, Math.max(speedMps[i]!, 1));
-  const lastV = v[v.length - 1]!;
+  for (let i = 0; i < stations; i++) walk(chainageM[i]!, Math.max(speedMps[i]!, SLOWEST_MPS));
+  const lastV = v[n - 1]!;
   // Past the end far enough for the exit's own ramp and the windows.
-  walk(Math.max(shape.s[3], chainageM[n - 1]!) + 1.7 * lastV, lastV);
-  return { t, s, v };
+  walk(Math.max(shape.s[3], chainageM[stations - 1]!) + 1.7 * lastV, lastV);
+  into.count = n;
 }
 
 /**
@@ -134,32 +160,38 @@ export function bodyMotion(
 ): BodyMotion {
   const shape = shapeOf(facts, cantRatio, cantRatioBefore, cantRatioAfter);
   const stepS = model.roll === null ? GRID_S : Math.min(0.05 / model.roll.frequencyHz, GRID_S);
-  // Scaling the speed divides all times by the same factor, so nodes are made once a call.
-  const { t, s, v } = nodes(facts, shape, stepS * speedScale);
-  const n = t.length;
-  const drive = new Float64Array(n);
-  const lean = new Float64Array(n);
+  // Scaling the speed divides all times by the same factor, so the nodes laid serve for the scaled run too.
+  layNodes(facts, shape, stepS * speedScale, scratch);
+  const n = scratch.count;
+  const { s, v, drive, lean, integral } = scratch;
+  const t = scratch.t.subarray(0, n);
+  const phi = scratch.phi;
+  const [a, b, c, d] = shape.s;
   let quasiStatic = 0;
   for (let i = 0; i < n; i++) {
     t[i] = t[i]! / speedScale;
     const speed = v[i]! * speedScale;
-    const ratio = ramp(shape, shape.cantRatio, s[i]!);
-    const track =
-      speed * speed * ramp(shape, shape.curvature, s[i]!) * Math.sqrt(1 - ratio * ratio) -
-      STANDARD_GRAVITY_MPS2 * ratio;
+    const at = s[i]!;
+    // Share of the arc's own values: rises along the entry, falls along the exit.
+    const far = at <= c ? 0 : 2;
+    const share = at <= a ? 0 : at < b ? (at - a) / (b - a) : at <= c ? 1 : at < d ? (d - at) / (d - c) : 0;
+    const ratio = shape.cantRatio[far] + (shape.cantRatio[1] - shape.cantRatio[far]) * share;
+    const kappa = shape.curvature[far] + (shape.curvature[1] - shape.curvature[far]) * share;
+    const track = speed * speed * kappa * Math.sqrt(1 - ratio * ratio) - STANDARD_GRAVITY_MPS2 * ratio;
     drive[i] = track * (1 - model.tiltCompensation);
     lean[i] = Math.asin(ratio);
     quasiStatic = Math.max(quasiStatic, Math.abs(drive[i]!));
   }
-  const phi = new Float64Array(n);
-  if (model.roll === null)
+  if (model.roll === null) {
     for (let i = 0; i < n; i++) phi[i] = (model.rollCoefficient * drive[i]!) / STANDARD_GRAVITY_MPS2;
-  else rollResponse(model.roll, t, drive, phi, new Float64Array(n));
+  } else {
+    rollResponse(model.roll, t, drive.subarray(0, n), phi, scratch.rate);
+  }
 
   let peakBody = 0;
   let peakRoll = 0;
-  const integral = new Float64Array(n);
   let before = 0;
+  integral[0] = 0;
   for (let i = 0; i < n; i++) {
     const felt = drive[i]! + STANDARD_GRAVITY_MPS2 * phi[i]!;
     if (i > 0) integral[i] = integral[i - 1]! + ((felt + before) / 2) * (t[i]! - t[i - 1]!);
@@ -174,13 +206,13 @@ export function bodyMotion(
     peakBodyMps2: peakBody,
     dynamicFactor: staticRoll > 0 ? peakRoll / staticRoll : 1,
     peakRollDeg: radToDeg(peakRoll),
-    ...windows(t, integral, lean, timeOf(t, s, shape.s[0]), timeOf(t, s, shape.s[1])),
+    ...windows(t, integral, lean, timeOf(t, s, a), timeOf(t, s, b)),
   };
 }
 
-function timeOf(t: readonly number[], s: readonly number[], chainageM: number): number {
+function timeOf(t: Float64Array, s: Float64Array, chainageM: number): number {
   let i = 0;
-  while (i < s.length - 1 && s[i]! < chainageM - 1e-6) i++;
+  while (i < t.length - 1 && s[i]! < chainageM - 1e-6) i++;
   return t[i]!;
 }
 
@@ -189,13 +221,7 @@ type Windows = Pick<
   'entryS' | 'meanBodyMps2' | 'meanJerkMps3' | 'meanRollDegS' | 'eventPeakToPeakMps2' | 'eventMeanMps2'
 >;
 
-function windows(
-  t: readonly number[],
-  integral: Float64Array,
-  lean: Float64Array,
-  startS: number,
-  endS: number,
-): Windows {
+function windows(t: Float64Array, integral: Float64Array, lean: Float64Array, startS: number, endS: number): Windows {
   // Everything on one grid that begins 2 s before the transition; before the first node the motion is taken as steady.
   const first = startS - 2;
   const count = Math.ceil((endS + 3.7 - first) / GRID_S) + 1;

@@ -6,3 +6,6 @@ export type { CurveAdvice, LineAdvice } from './line.ts';
 export { applyTrial } from './trial.ts';
 export type { Trial } from './trial.ts';
 export { parseCantRegister } from './cant/parse-register.ts';
+export { resonanceFindings } from './resonance.ts';
+export { runMotionDose } from './motion-dose.ts';
+export { fitRegister } from './cant/fit-register.ts';

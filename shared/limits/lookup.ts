@@ -27,7 +27,8 @@ export function bandValue(band: LimitBand, tier: Tier): { value: number; tier: T
 
 /** The set's entry for a criterion, or null. */
 export function entryOf(set: LimitSet, criterion: CriterionId): Limit | null {
-  return set.limits.find((limit) => limit.criterion === criterion) ?? null;
+  for (const limit of set.limits) if (limit.criterion === criterion) return limit;
+  return null;
 }
 
 /**
@@ -42,9 +43,13 @@ export function limitFor(
   radiusM: number,
 ): AppliedLimit | null {
   const limit = entryOf(set, criterion);
-  const band = limit?.bands.find((b) => bandApplies(b, speedKmh, radiusM));
-  const found = band === undefined ? null : bandValue(band, tier);
-  return limit === null || found === null ? null : { ...found, limit };
+  if (limit === null) return null;
+  for (const band of limit.bands) {
+    if (!bandApplies(band, speedKmh, radiusM)) continue;
+    const found = bandValue(band, tier);
+    return found === null ? null : { value: found.value, tier: found.tier, limit };
+  }
+  return null;
 }
 
 /** Source in one line: document, clause, year and how the value was obtained. */
