@@ -31,6 +31,14 @@ export type Job = z.infer<typeof Job>;
 
 export const ColumnUse = z.object({ header: z.string(), field: z.string(), unit: z.string(), guessed: z.boolean() });
 
+/** First rows of a delimited file and what its columns were taken for. */
+export const ColumnPreview = z.object({
+  columns: z.array(ColumnUse),
+  headers: z.array(z.string()),
+  rows: z.array(z.array(z.string())),
+});
+export type ColumnPreview = z.infer<typeof ColumnPreview>;
+
 export const RunSummary = z.object({
   id: z.string(),
   recordingId: z.string(),
@@ -164,6 +172,8 @@ export const RunDetail = z.object({
   elements: z.array(Element),
   passages: RunPassagesWire,
   waypoints: z.array(z.object({ name: z.string(), latDeg: z.number(), lonDeg: z.number() })),
+  /** The setup in effect for this run. */
+  setup: SetupRef,
 });
 export type RunDetail = z.infer<typeof RunDetail>;
 

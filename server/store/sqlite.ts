@@ -1,0 +1,37 @@
+/** The part of node:sqlite that the store uses; the package and the built-in share it. */
+export interface SqliteStatement {
+  all(...parameters: unknown[]): unknown[];
+  run(...parameters: unknown[]): { changes: number | bigint; lastInsertRowid: number | bigint };
+  iterate(...parameters: unknown[]): IterableIterator<unknown>;
+}
+export interface SqliteConnection {
+  exec(sql: string): void;
+  prepare(sql: string): SqliteStatement;
+  close(): void;
+}
+
+/**
+ * Opens a database with the interface of node:sqlite: the built-in one where Node has it (22.13 and
+ * later), else the package that carries the same interface with its binary, so that no compiler is needed.
+ */
+export async function openSqlite(path: string): Promise<SqliteConnection> {
+  const module = await sqliteModule();
+  const connection = new module.DatabaseSync(path);
+  // FULL: an acknowledged recording survives a killed process and a power cut alike.
+  connection.exec(
+    'PRAGMA journal_mode = WAL; PRAGMA synchronous = FULL; PRAGMA foreign_keys = ON; PRAGMA busy_timeout = 5000',
+  );
+  return connection;
+}
+
+async function sqliteModule(): Promise<{ DatabaseSync: new (path: string) => SqliteConnection }> {
+  const [major = 0, minor = 0] = process.versions.node.split('.').map(Number);
+  if (major > 22 || (major === 22 && minor >= 13)) {
+    // The name is held apart: compilers and bundlers for Node 20 do not know the built-in.
+    const builtIn = 'node:sqlite';
+    return (await import(builtIn)) as { DatabaseSync: new (path: string) => SqliteConnection };
+  }
+  return (await import('@photostructure/sqlite')) as unknown as {
+    DatabaseSync: new (path: string) => SqliteConnection;
+  };
+}
