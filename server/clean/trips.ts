@@ -1,0 +1,272 @@
+import type { FixColumns } from '../../shared/model/recording.ts';
+import { counted, type FindingLog } from '../ingest/finding-log.ts';
+import { distanceM } from './distance.ts';
+import { sampledQuantile } from './quantiles.ts';
+import { pickTrack, placeOf, type Track } from './track.ts';
+
+/** No fix for longer than this ends a trip, s. Station stops and tunnels are shorter. */
+export const TRIP_GAP_S = 1200;
+/** No vehicle of interest is faster, m/s. */
+const MOST_SPEED_MPS = 120;
+/** Change of speed that no vehicle of interest exceeds, m/s². */
+const MOST_ACCELERATION_MPS2 = 6;
+/** Error of position allowed between two fixes before motion has to explain their distance, m. */
+const POSITION_SLACK_M = 25;
+/** Pieces back that a piece may join to. */
+const LOOK_BACK = 60;
+
+/** Stretch of a track without a jump, `start`..`end` exclusive. */
+interface Piece {
+  readonly start: number;
+  readonly end: number;
+}
+
+function between(track: Track, fixes: FixColumns, i: number, j: number): number {
+  const [a, b] = [track.rows[i]!, track.rows[j]!];
+  return distanceM(fixes.latDeg[a]!, fixes.lonDeg[a]!, fixes.latDeg[b]!, fixes.lonDeg[b]!);
+}
+
+/** Speed at fix `i` within its piece, from the fixes a few seconds beside it; 0 for a lone fix. */
+function speedNear(track: Track, fixes: FixColumns, piece: Piece, i: number): number {
+  let a = i;
+  let b = i;
+  while (a > piece.start && track.utcS[i]! - track.utcS[a]! < 3) a--;
+  while (b < piece.end - 1 && track.utcS[b]! - track.utcS[i]! < 3) b++;
+  const dt = track.utcS[b]! - track.utcS[a]!;
+  return dt > 0 ? Math.min(MOST_SPEED_MPS, between(track, fixes, a, b) / dt) : 0;
+}
+
+/** True when a vehicle near `speed` at either end can have gone `distance` in `dt` seconds. */
+function reachable(distance: number, dt: number, speed: number): boolean {
+  const fastest = Math.min(MOST_SPEED_MPS, speed + MOST_ACCELERATION_MPS2 * dt);
+  return distance <= fastest * dt + POSITION_SLACK_M;
+}
+
+/** Cuts where the position jumps by more than motion explains. */
+function cutAtJumps(track: Track, fixes: FixColumns): Piece[] {
+  const pieces: Piece[] = [];
+  let start = 0;
+  const n = track.rows.length;
+  // Speed of the last seconds, from an anchor a few seconds back.
+  let anchor = 0;
+  for (let i = 1; i < n; i++) {
+    const dt = track.utcS[i]! - track.utcS[i - 1]!;
+    const step = between(track, fixes, i - 1, i);
+    if (step > POSITION_SLACK_M) {
+      while (anchor < i - 2 && track.utcS[i - 1]! - track.utcS[anchor]! > 5) anchor++;
+      anchor = Math.max(anchor, start);
+      const span = track.utcS[i - 1]! - track.utcS[anchor]!;
+      // At the start of a piece the speed is not known yet: look ahead instead.
+      const speed =
+        span > 0
+          ? between(track, fixes, anchor, i - 1) / span
+          : speedNear(track, fixes, { start: i, end: Math.min(n, i + 20) }, i);
+      if (!reachable(step, dt, speed)) {
+        pieces.push({ start, end: i });
+        start = anchor = i;
+      }
+    }
+  }
+  if (n > 0) pieces.push({ start, end: n });
+  return pieces;
+}
+
+/**
+ * The chain of pieces with most fixes in which each can be reached from the one before; indices into `pieces`.
+ */
+function bestChain(track: Track, fixes: FixColumns, pieces: readonly Piece[]): number[] {
+  const score = new Float64Array(pieces.length);
+  const from = new Int32Array(pieces.length).fill(-1);
+  let best = 0;
+  for (let k = 0; k < pieces.length; k++) {
+    const piece = pieces[k]!;
+    const size = piece.end - piece.start;
+    score[k] = size;
+    const speedHere = speedNear(track, fixes, piece, piece.start);
+    for (let m = k - 1; m >= Math.max(0, k - LOOK_BACK); m--) {
+      if (score[m]! + size <= score[k]!) continue;
+      const previous = pieces[m]!;
+      const dt = track.utcS[piece.start]! - track.utcS[previous.end - 1]!;
+      const speed = Math.max(speedHere, speedNear(track, fixes, previous, previous.end - 1));
+      if (reachable(between(track, fixes, previous.end - 1, piece.start), dt, speed)) {
+        score[k] = score[m]! + size;
+        from[k] = m;
+      }
+    }
+    if (score[k]! > score[best]!) best = k;
+  }
+  const chain: number[] = [];
+  for (let k = best; k >= 0; k = from[k]!) chain.push(k);
+  return chain.reverse();
+}
+
+/** A left-over stretch is a trip of its own only when it is at least this long. */
+const LEAST_TRIP_FIXES = 8;
+const LEAST_TRIP_S = 20;
+/** Share of left-over fixes that lie between fixes of the chain, each within about one interval, for a second vehicle. */
+const INTERLEAVED = 0.5;
+
+/**
+ * One stretch of time into trips: the best chain of plausible pieces is a trip; what lies before or after it is
+ * looked at in the same way; what lies within its time is a second vehicle when it alternates with the chain fix by
+ * fix, and false fixes, left out and counted, when not.
+ */
+function untangle(track: Track, fixes: FixColumns, file: string, log: FindingLog, out: Track[], depth: number): void {
+  const n = track.rows.length;
+  if (n === 0) return;
+  const pieces = cutAtJumps(track, fixes);
+  if (pieces.length === 1) {
+    out.push(track);
+    return;
+  }
+  const chain = bestChain(track, fixes, pieces);
+  const inChain = new Set(chain);
+  const first = pieces[chain[0]!]!.start;
+  const last = pieces[chain.at(-1)!]!.end;
+  const taken: number[] = [];
+  const within: number[] = [];
+  pieces.forEach((piece, k) => {
+    if (inChain.has(k)) for (let i = piece.start; i < piece.end; i++) taken.push(i);
+    else if (piece.start >= first && piece.end <= last) for (let i = piece.start; i < piece.end; i++) within.push(i);
+  });
+  const outside = (from: number, to: number): void => {
+    if (to <= from) return;
+    const rest = pickTrack(
+      track,
+      Array.from({ length: to - from }, (_, i) => from + i),
+    );
+    const long = to - from >= LEAST_TRIP_FIXES && track.utcS[to - 1]! - track.utcS[from]! >= LEAST_TRIP_S;
+    if (long && depth < 40) {
+      log.note(
+        'position-leap',
+        'serious',
+        (many) =>
+          `At ${counted(many, 'place')} the position leaps farther than any motion explains and stays there: the run is split, and one side may lie beside the line`,
+        placeOf(fixes, file, track.rows[from === 0 ? to : from]!, track.utcS[from === 0 ? to : from]!),
+      );
+      untangle(rest, fixes, file, log, out, depth + 1);
+    } else dropJumps(rest, fixes, file, log);
+  };
+  outside(0, first);
+  out.push(pickTrack(track, taken));
+  if (within.length > 0) {
+    const rest = pickTrack(track, within);
+    if (depth < 40 && alternates(track, taken, within)) {
+      log.note(
+        'two-vehicles',
+        'warning',
+        (many) => `The log alternates between ${counted(many + 1, 'vehicle')}: each is a run of its own`,
+        placeOf(fixes, file, rest.rows[0]!, rest.utcS[0]!),
+      );
+      untangle(rest, fixes, file, log, out, depth + 1);
+    } else dropJumps(rest, fixes, file, log);
+  }
+  outside(last, n);
+}
+
+/** True when more than half of `within` have a neighbour of `taken` on both sides in the track. */
+function alternates(track: Track, taken: readonly number[], within: readonly number[]): boolean {
+  if (within.length < LEAST_TRIP_FIXES || within.length < 0.2 * taken.length) return false;
+  const isTaken = new Uint8Array(track.rows.length);
+  for (const i of taken) isTaken[i] = 1;
+  let between = 0;
+  for (const i of within) if (isTaken[i - 1] === 1 && isTaken[i + 1] === 1) between++;
+  return between >= INTERLEAVED * within.length;
+}
+
+function dropJumps(track: Track, fixes: FixColumns, file: string, log: FindingLog): void {
+  for (let i = 0; i < track.rows.length; i++) {
+    log.note(
+      'impossible-jump',
+      'warning',
+      (many) => `${counted(many, 'fix', 'fixes')} too far away for any motion to explain left out`,
+      placeOf(fixes, file, track.rows[i]!, track.utcS[i]!),
+      1,
+    );
+  }
+}
+
+/**
+ * Segments of the file whose times overlap for long are different vehicles; all others follow one another.
+ * @returns Tracks in file order, one for each vehicle.
+ */
+export function separateVehicles(track: Track, fixes: FixColumns, file: string, log: FindingLog): Track[] {
+  const spans = new Map<number, { from: number; to: number; members: number[] }>();
+  for (let i = 0; i < track.rows.length; i++) {
+    const segment = fixes.segment[track.rows[i]!]!;
+    const utc = track.utcS[i]!;
+    const span = spans.get(segment);
+    if (span === undefined) spans.set(segment, { from: utc, to: utc, members: [i] });
+    else {
+      span.from = Math.min(span.from, utc);
+      span.to = Math.max(span.to, utc);
+      span.members.push(i);
+    }
+  }
+  if (spans.size < 2) return [track];
+  // Each vehicle takes the segments that begin after its last one ended.
+  const vehicles: { to: number; members: number[] }[] = [];
+  for (const span of [...spans.values()].sort((a, b) => a.from - b.from)) {
+    const short = Math.min(60, 0.5 * (span.to - span.from));
+    const repeats = (vehicle: { members: number[] }) => sameThere(track, fixes, vehicle.members, span.members);
+    const free = vehicles.find((vehicle) => span.from >= vehicle.to - short || repeats(vehicle));
+    if (free === undefined) vehicles.push({ to: span.to, members: span.members });
+    else {
+      free.members = free.members.concat(span.members);
+      free.to = Math.max(free.to, span.to);
+    }
+  }
+  if (vehicles.length === 1) return [track];
+  log.note(
+    'two-vehicles',
+    'warning',
+    () => `The log holds ${vehicles.length} vehicles or recorders at the same time: each is a run of its own`,
+    placeOf(fixes, file, track.rows[0]!, track.utcS[0]!),
+  );
+  return vehicles.map(({ members }) =>
+    pickTrack(
+      track,
+      members.sort((a, b) => a - b),
+    ),
+  );
+}
+
+/** True when the two sets of fixes tell the same journey: a block written twice. */
+function sameThere(track: Track, fixes: FixColumns, a: readonly number[], b: readonly number[]): boolean {
+  const at = new Map<number, number>();
+  for (const i of a) at.set(track.utcS[i]!, i);
+  let [common, same] = [0, 0];
+  for (const j of b) {
+    const i = at.get(track.utcS[j]!);
+    if (i === undefined) continue;
+    common++;
+    if (between(track, fixes, i, j) < POSITION_SLACK_M) same++;
+  }
+  return common >= 3 && same >= 0.9 * common;
+}
+
+/** One vehicle's fixes, in time order, into trips. */
+export function splitTrips(track: Track, fixes: FixColumns, file: string, log: FindingLog): Track[] {
+  const trips: Track[] = [];
+  const n = track.rows.length;
+  const typical = sampledQuantile(n - 1, 0.5, (i) => track.utcS[i + 1]! - track.utcS[i]!);
+  // A log of sparse fixes has gaps by nature.
+  const tripGapS = Math.max(TRIP_GAP_S, 20 * (Number.isFinite(typical) ? typical : 0));
+  let start = 0;
+  for (let i = 1; i <= n; i++) {
+    if (i < n && track.utcS[i]! - track.utcS[i - 1]! <= tripGapS) continue;
+    if (i < n) {
+      log.note(
+        'trip-end',
+        'info',
+        (many) =>
+          `${counted(many, 'gap')} of more than ${(tripGapS / 60).toFixed(0)} minutes: a new run begins after each`,
+        placeOf(fixes, file, track.rows[i]!, track.utcS[i]!),
+      );
+    }
+    const indices = Array.from({ length: i - start }, (_, k) => start + k);
+    untangle(i - start === n ? track : pickTrack(track, indices), fixes, file, log, trips, 0);
+    start = i;
+  }
+  return trips.sort((a, b) => a.utcS[0]! - b.utcS[0]!);
+}
