@@ -213,9 +213,11 @@ export function assessCurve(run: string, curveCase: CurveCase, setup: Setup, wit
   const worst = governing(judged);
   const needs = needsOf(judged);
   const verdict = worst?.result.verdict ?? 'not assessed';
-  const isOpen = verdict === 'over' || verdict === 'undecided';
+  const failing = judged.filter((j) => j.result.verdict === 'over' || j.result.verdict === 'undecided');
+  // Slowing costs time only where it cures something.
+  const slows = failing.some((j) => j.measured?.speedFor !== undefined);
   const timeCost =
-    needs.speedKmh === null ? null : isOpen ? slowerCurveCostS(passage, needs.speedKmh / 3.6, setup.vehicle) : 0;
+    needs.speedKmh === null ? null : slows ? slowerCurveCostS(passage, needs.speedKmh / 3.6, setup.vehicle) : 0;
   const cures = curesOf(curveCase, setup, judged, finite(timeCost));
   const of = (id: Measured['criterion']): Measured | null =>
     judged.find((j) => j.result.criterion === id)?.measured ?? null;

@@ -207,6 +207,9 @@ export function entryDeceleration(curveCase: CurveCase): Measured {
   };
 }
 
+/** Heights that bound the vertical acceleration no closer than this, m/s², say nothing of limits of 0.2 to 0.4 m/s². */
+const WORST_VERTICAL_MPS2 = 0.1;
+
 export function vertical(curveCase: CurveCase): Measured | Unmeasured {
   const { facts } = curveCase;
   const found = verticalCurvature(facts.passage);
@@ -215,10 +218,10 @@ export function vertical(curveCase: CurveCase): Measured | Unmeasured {
   const v = facts.top.mps;
   const value = verticalAccelerationMps2(v, found.curvaturePerM);
   const half = facts.z * v * v * found.sdPerM;
-  if (half > 0.5) {
+  if (half > WORST_VERTICAL_MPS2) {
     return {
       criterion: 'vertical',
-      missing: `the elevation is not good enough: it bounds the vertical acceleration only to ±${num(half, 1)} m/s²`,
+      missing: `the elevation is not good enough: it bounds the vertical acceleration only to ±${num(half, 2)} m/s²`,
     };
   }
   return {

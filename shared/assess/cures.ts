@@ -71,6 +71,10 @@ function againstTransition(curveCase: CurveCase, neededM: number): string {
   return growth > arc ? `the circular part of ${num(arc, 0)} m is too short for it at this radius` : '';
 }
 
+function notCured(others: readonly string[]): string {
+  return others.length > 0 ? `does not cure ${others.join(', ')}` : '';
+}
+
 /**
  * The cures of a curve that is not within its limits: speed, cant and transition, each with what stands against it. Empty for a curve that is
  * within, or that nothing can be said of.
@@ -85,15 +89,15 @@ export function curesOf(
   if (failing.length === 0) return [];
   const cures: Cure[] = [];
   const needs = needsOf(judged);
-  if (needs.speedKmh !== null) {
-    const uncured = failing.filter((j) => j.measured?.speedFor === undefined).map((j) => j.result.criterion);
+  const bySpeed = failing.filter((j) => j.measured?.speedFor !== undefined);
+  if (needs.speedKmh !== null && bySpeed.length > 0) {
+    const others = failing.filter((j) => j.measured?.speedFor === undefined).map((j) => j.result.criterion);
     cures.push({
       kind: 'speed',
       value: needs.speedKmh,
       unit: 'km/h',
-      feasible: uncured.length === 0 && needs.speedKmh > 0,
-      against:
-        uncured.length > 0 ? `does not cure ${uncured.join(', ')}` : needs.speedKmh > 0 ? '' : 'no speed complies',
+      feasible: others.length === 0 && needs.speedKmh > 0,
+      against: [needs.speedKmh > 0 ? '' : 'no speed complies', notCured(others)].filter((t) => t !== '').join('; '),
       timeCostS,
     });
   }

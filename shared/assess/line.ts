@@ -28,7 +28,7 @@ export interface LineAdvice {
   readonly lostS: number;
   /** Curves that are to be slowed for, those first that buy the most comfort for the least time. */
   readonly order: readonly CurveAdvice[];
-  /** Curves that are not within their limits and that no speed cures. */
+  /** Curves that are not within their limits and that slowing does not bring within them all. */
   readonly uncured: readonly number[];
 }
 
@@ -66,10 +66,9 @@ export function adviseLine(profile: ProfileInput, passages: RunPassages, setup: 
   before.forEach(({ row, cures }, index) => {
     if (row.verdict !== 'over' && row.verdict !== 'undecided') return;
     const cure = cures?.find((c) => c.kind === 'speed');
-    if (cure === undefined || !(cure.value > 0)) {
-      uncured.push(row.curve);
-      return;
-    }
+    // A curve that slowing helps without curing it whole is slowed for and listed.
+    if (cure?.feasible !== true) uncured.push(row.curve);
+    if (cure === undefined || !(cure.value > 0)) return;
     const { curve } = passages.passages[index]!;
     limits.push({ index, fromM: curve.startM, toM: curve.endM, mps: kmhToMps(cure.value) });
   });

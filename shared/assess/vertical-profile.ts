@@ -1,8 +1,8 @@
 import type { Passage } from '../model/passage.ts';
 import { timeAlongS } from './running-time.ts';
 
-/** Wander of satellite heights: standard deviation, m, and correlation time, s (from memory; typical open sky). */
-const WANDER_SD_M = 3;
+/** Wander of satellite heights: standard deviation, m, and correlation time, s (from memory; half as much again as across, open sky). */
+const WANDER_SD_M = 5;
 const WANDER_TIME_S = 100;
 
 /**
