@@ -12,6 +12,15 @@ const MOST_SPEED_MPS = 120;
 const MOST_ACCELERATION_MPS2 = 6;
 /** Error of position allowed between two fixes before motion has to explain their distance, m. */
 const POSITION_SLACK_M = 25;
+/** A receiver whose positions lagged behind catches up by leaps ahead of at most this, m, ... */
+const MOST_CATCH_UP_M = 1000;
+/** ... no farther beside the line of travel than this, m, or this share of the leap. */
+const CATCH_UP_ASIDE_M = 25;
+const CATCH_UP_ASIDE = 0.5;
+/** Fixes that a chain must gain to take such a leap: a lone false fix ahead is left out instead. */
+const CATCH_UP_COST = 3;
+/** Way over which the direction of travel is read, m. */
+const DIRECTION_WAY_M = 30;
 /** Pieces back that a piece may join to. */
 const LOOK_BACK = 60;
 
@@ -71,6 +80,39 @@ function cutAtJumps(track: Track, fixes: FixColumns): Piece[] {
   return pieces;
 }
 
+/** East and north from fix `i` to fix `j`, m; for directions only. */
+function offset(track: Track, fixes: FixColumns, i: number, j: number): [east: number, north: number] {
+  const [a, b] = [track.rows[i]!, track.rows[j]!];
+  const north = (fixes.latDeg[b]! - fixes.latDeg[a]!) * 111_195;
+  let dLon = fixes.lonDeg[b]! - fixes.lonDeg[a]!;
+  if (dLon > 180) dLon -= 360;
+  if (dLon < -180) dLon += 360;
+  return [dLon * 111_195 * Math.cos((fixes.latDeg[a]! * Math.PI) / 180), north];
+}
+
+/**
+ * True when the leap from the end of `previous` to the start of `next` goes ahead along the line of travel: positions
+ * that lagged behind (filtered by a phone, or propagated through a tunnel) and caught up.
+ */
+function isCatchUp(track: Track, fixes: FixColumns, previous: Piece, next: Piece): boolean {
+  const [east, north] = offset(track, fixes, previous.end - 1, next.start);
+  const leap = Math.hypot(east, north);
+  if (leap > MOST_CATCH_UP_M) return false;
+  const aheadOf = (from: number, to: number): boolean => {
+    const [dirEast, dirNorth] = offset(track, fixes, from, to);
+    const way = Math.hypot(dirEast, dirNorth);
+    if (way < DIRECTION_WAY_M) return false;
+    const ahead = (east * dirEast + north * dirNorth) / way;
+    const aside = Math.abs(east * dirNorth - north * dirEast) / way;
+    return ahead > 0 && (aside < CATCH_UP_ASIDE_M || aside < CATCH_UP_ASIDE * leap);
+  };
+  let from = previous.end - 1;
+  while (from > previous.start && between(track, fixes, from, previous.end - 1) < DIRECTION_WAY_M) from--;
+  let to = next.start;
+  while (to < next.end - 1 && between(track, fixes, next.start, to) < DIRECTION_WAY_M) to++;
+  return aheadOf(from, previous.end - 1) || aheadOf(next.start, to);
+}
+
 /**
  * The chain of pieces with most fixes in which each can be reached from the one before; indices into `pieces`.
  */
@@ -84,12 +126,18 @@ function bestChain(track: Track, fixes: FixColumns, pieces: readonly Piece[]): n
     score[k] = size;
     const speedHere = speedNear(track, fixes, piece, piece.start);
     for (let m = k - 1; m >= Math.max(0, k - LOOK_BACK); m--) {
-      if (score[m]! + size <= score[k]!) continue;
+      const gain = score[m]! + size;
+      if (gain <= score[k]!) continue;
       const previous = pieces[m]!;
       const dt = track.utcS[piece.start]! - track.utcS[previous.end - 1]!;
       const speed = Math.max(speedHere, speedNear(track, fixes, previous, previous.end - 1));
-      if (reachable(between(track, fixes, previous.end - 1, piece.start), dt, speed)) {
-        score[k] = score[m]! + size;
+      const cost = reachable(between(track, fixes, previous.end - 1, piece.start), dt, speed)
+        ? 0
+        : isCatchUp(track, fixes, previous, piece)
+          ? CATCH_UP_COST
+          : Infinity;
+      if (gain - cost > score[k]!) {
+        score[k] = gain - cost;
         from[k] = m;
       }
     }
@@ -120,6 +168,7 @@ function untangle(track: Track, fixes: FixColumns, file: string, log: FindingLog
     return;
   }
   const chain = bestChain(track, fixes, pieces);
+  noteCatchUps(track, fixes, file, log, pieces, chain);
   const inChain = new Set(chain);
   const first = pieces[chain[0]!]!.start;
   const last = pieces[chain.at(-1)!]!.end;
@@ -162,6 +211,28 @@ function untangle(track: Track, fixes: FixColumns, file: string, log: FindingLog
     } else dropJumps(rest, fixes, file, log);
   }
   outside(last, n);
+}
+
+function noteCatchUps(
+  track: Track,
+  fixes: FixColumns,
+  file: string,
+  log: FindingLog,
+  pieces: readonly Piece[],
+  chain: readonly number[],
+): void {
+  for (let c = 1; c < chain.length; c++) {
+    const [last, next] = [pieces[chain[c - 1]!]!.end - 1, pieces[chain[c]!]!.start];
+    const dt = track.utcS[next]! - track.utcS[last]!;
+    if (reachable(between(track, fixes, last, next), dt, speedNear(track, fixes, pieces[chain[c]!]!, next))) continue;
+    log.note(
+      'catch-up',
+      'warning',
+      (many) =>
+        `At ${counted(many, 'place')} the positions leap ahead along the line (the receiver lagged behind and caught up): what lies just before is less sure`,
+      placeOf(fixes, file, track.rows[next]!, track.utcS[next]!),
+    );
+  }
 }
 
 /** True when more than half of `within` have a neighbour of `taken` on both sides in the track. */

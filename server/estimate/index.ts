@@ -1,12 +1,14 @@
 import type { Finding } from '../../shared/model/finding.ts';
 import type { Motion } from '../../shared/model/motion.ts';
 import type { Run } from '../../shared/model/run.ts';
-import { adaptWalk } from './adapt-walk.ts';
+import { adaptProcessNoise } from './adapt-noise.ts';
 import { writeChainage } from './chainage.ts';
+import { advanceDoppler, dropMissing } from './lag.ts';
 import { describe } from './findings.ts';
 import { USE, observe } from './observations.ts';
 import { describeQuality } from './quality.ts';
 import { reviewFix, weighDoppler } from './robust.ts';
+import { screen } from './screen.ts';
 import { smooth, smoothedCovariances } from './smoother.ts';
 import { GATE, tune } from './tuning.ts';
 import { WANDER_TIME_S, walkAt } from './parameters.ts';
@@ -17,6 +19,8 @@ export interface EstimateOptions {
   readonly onProgress?: (share: number) => void;
 }
 
+/** White position error taken for granted before the noise is known, m. */
+const SCREENING_WHITE_M = 1;
 /** Gate of the last pass, where the robust weights already carry the outliers. */
 const LAST_GATE = 25;
 
@@ -49,15 +53,20 @@ export function estimateMotion(run: Run, options: EstimateOptions = {}): { motio
     positionVarianceFactor: new Float32Array(count),
     dopplerVarianceFactor: new Float32Array(count),
   };
-  const observations = observe(run, columns.positionVarianceFactor, columns.dopplerVarianceFactor);
+  let observations = observe(run, columns.positionVarianceFactor, columns.dopplerVarianceFactor);
+  screen(observations, SCREENING_WHITE_M);
   report(0);
   const tuned = tune(observations, run.intervalS, run.resolution.timeS >= 0.5);
   const { parameters } = tuned;
+  if (tuned.lags.courseS !== 0 || tuned.lags.speedS !== 0) {
+    observations = { ...observations, ...advanceDoppler(observations, tuned.lags, null) };
+    dropMissing(observations);
+  }
   report(0.2);
   const walk = { walk: 0, lengthM: 1 };
   const residuals = { speed: new Float32Array(count), course: new Float32Array(count) };
-  const walkFound = new Float32Array(count);
-  const walkExpected = new Float32Array(count);
+  const walkScore = { found: new Float32Array(count), expected: new Float32Array(count) };
+  const jerkScore = { found: new Float32Array(count), expected: new Float32Array(count) };
   const first = smooth(
     observations,
     parameters,
@@ -71,17 +80,20 @@ export function estimateMotion(run: Run, options: EstimateOptions = {}): { motio
       columns.accelerationMps2[i] = state[4]!;
       columns.curvaturePerM[i] = state[5]!;
       // Score of the curvature's noise in the step into i: of c itself, which carries nearly all of it.
-      const d = i > 0 ? state[3]! * (observations.timeS[i]! - observations.timeS[i - 1]!) : 0;
+      const dt = i > 0 ? observations.timeS[i]! - observations.timeS[i - 1]! : 0;
+      const d = state[3]! * dt;
       walkAt(parameters, state[3]!, walk);
       const k = (walk.walk / (2 * walk.lengthM)) * (1 - Math.exp((-2 * Math.max(0, d)) / walk.lengthM));
-      walkFound[i] = k * lambda[6]! ** 2;
-      walkExpected[i] = k * Lambda[27]!;
+      walkScore.found[i] = k * lambda[6]! ** 2;
+      walkScore.expected[i] = k * Lambda[27]!;
+      jerkScore.found[i] = parameters.jerkNoise * dt * lambda[4]! ** 2;
+      jerkScore.expected[i] = parameters.jerkNoise * dt * Lambda[14]!;
       reviewFix(observations, parameters, i, state, residuals);
     },
     (share) => report(0.2 + 0.35 * share),
   );
   weighDoppler(residuals, columns.dopplerVarianceFactor);
-  adaptWalk(observations, parameters, columns.speedMps, walkFound, walkExpected);
+  adaptProcessNoise(observations, parameters, columns.speedMps, walkScore, jerkScore);
   const pairs = [
     [0, [0]],
     [1, [1]],

@@ -56,12 +56,9 @@ const FAR_M = 60;
 /** Smallest process variances of heading and curvature in a step, so that nothing is singular at standstill. */
 const LEAST_HEADING_VARIANCE = 1e-14;
 const LEAST_CURVATURE_VARIANCE = 1e-16;
-/** Positions beyond the gate in a row after which the position error is taken to have leapt. */
-const MISSED_POSITIONS = 3;
-const LOST_SPEED_VARIANCE = 4;
-const LOST_ACCELERATION_VARIANCE = 1;
-const LOST_HEADING_VARIANCE = 0.3;
-const LOST_LATERAL_MPS2 = 2;
+/** Positions beyond the gate in a row after which they are believed. */
+const MISSED_WITH_COURSE = 3;
+const MISSED_WITHOUT_COURSE = 2;
 /**
  * Beyond this squared standardised innovation the deviance grows by TAIL ln(e^2 / S) only: the density's tail falls like a
  * power, fast enough to be a density, so that outliers neither pass for noise nor become free.
@@ -70,6 +67,9 @@ const TAIL_FROM = 9;
 const TAIL = 4;
 /** Doppler readings are rarely outliers; a manoeuvre that the model thinks unlikely must not look like one. */
 const DOPPLER_GATE = 100;
+/** Gaps longer than this end the continuity of the filter where the heading's sd after them exceeds the angle below. */
+const LEAST_GAP_S = 4;
+const LOST_HEADING_RAD = 0.35;
 /** Beyond these no vehicle on rails or road moves: a radius of 3 m, 15 m/s^2. */
 const GREATEST_CURVATURE_PER_M = 0.33;
 const GREATEST_ACCELERATION_MPS2 = 15;
@@ -130,7 +130,10 @@ export class MotionFilter {
     const { state, covariance } = this;
     for (let i = from; i < to; i++) {
       const at = (i - from) * RECORD.SIZE;
-      const starts = (use[i]! & USE.RESTART) !== 0 || this.#lost();
+      if ((use[i]! & USE.RESTART) === 0 && (this.#lost() || this.#losesHeading(timeS[i]! - timeS[i - 1]!))) {
+        use[i]! |= USE.RESTART;
+      }
+      const starts = (use[i]! & USE.RESTART) !== 0;
       if (starts) {
         writeStart(this.#observations, this.#parameters, i, state, covariance);
         this.#cos = Math.cos(state[2]!);
@@ -139,7 +142,17 @@ export class MotionFilter {
         this.missed.fill(0);
       } else {
         this.#predict(i, timeS[i]! - timeS[i - 1]!);
-        if (this.missed[0]! >= MISSED_POSITIONS) this.#recover(i);
+        const missed = this.missed[0]!;
+        if (missed >= MISSED_WITHOUT_COURSE && (use[i]! & USE.COURSE) === 0) {
+          // Positions alone: the vehicle turned or braked as the model thought unlikely, and the filter has lost it. Start afresh
+          // where that began; in this block, because what lies before it is settled.
+          this.deviance += RESTART_DEVIANCE;
+          i = Math.max(from, i - missed);
+          use[i]! |= USE.RESTART;
+          i--;
+          continue;
+        }
+        if (missed >= MISSED_WITH_COURSE && (use[i]! & USE.POSITION) !== 0) this.#freePosition(i);
       }
       if (record !== null) {
         record.set(state, at + RECORD.STATE);
@@ -162,6 +175,17 @@ export class MotionFilter {
       return true;
     }
     return false;
+  }
+
+  /** Would the heading be so uncertain after the gap that its linearisation means nothing? Either side then stands alone. */
+  #losesHeading(gapS: number): boolean {
+    if (gapS <= LEAST_GAP_S) return false;
+    const v = this.state[3]! + this.state[4]! * ACCELERATION_TIME_S * 0.5;
+    // A standing vehicle may pull away within the gap.
+    const d = Math.max(v, 0.25 * this.#parameters.typicalSpeedMps) * gapS;
+    const p = this.covariance;
+    const variance = p[5]! + 2 * d * p[17]! + d * d * p[20]! + (this.#parameters.curvatureWalk * d * d * d) / 3;
+    return variance > LOST_HEADING_RAD ** 2;
   }
 
   #predict(i: number, gapS: number): void {
@@ -213,6 +237,7 @@ export class MotionFilter {
     const changeLengthM = this.#walk.lengthM;
     // Stationary variance of c whose integral spreads like the curvature walk.
     const variance = (this.#walk.walk * this.#observations.walkFactor[i]!) / (2 * changeLengthM);
+    const jerk = this.#parameters.jerkNoise * this.#observations.jerkFactor[i]!;
     const half = 0.5 * h * h;
     f[COEFFICIENT.V_BY_A] = gainA;
     f[COEFFICIENT.DECAY_A] = decayA;
@@ -259,7 +284,7 @@ export class MotionFilter {
       dV += gainA * dA;
       dA *= decayA;
       predictCovariance(this.covariance, f, 0);
-      this.#addProcessNoise(d, h, cos, sin, variance, changeLengthM, x, decayC);
+      this.#addProcessNoise(d, h, cos, sin, variance, changeLengthM, x, decayC, jerk);
       if (step === 0) whole.set(f);
       else compose(whole, f);
       this.#cos = cos;
@@ -287,9 +312,10 @@ export class MotionFilter {
     l: number,
     x: number,
     e: number,
+    jerk: number,
   ): void {
     const p = this.covariance;
-    const { jerkNoise, diffusion, courseSlowMps } = this.#parameters;
+    const { diffusion, courseSlowMps } = this.#parameters;
     let cc: number;
     let kappaC: number;
     let kappaKappa: number;
@@ -321,7 +347,7 @@ export class MotionFilter {
     const lateralTheta = third * thetaTheta;
     const lateralKappa = third * thetaKappa;
     const lateralC = third * thetaC;
-    const j = jerkNoise * h;
+    const j = jerk * h;
     const h2 = h * h;
     const along = (j * h2 * h2) / 20;
     const alongV = (j * h2 * h) / 8;
@@ -353,27 +379,12 @@ export class MotionFilter {
     p[35]! += fresh * courseSlowMps * courseSlowMps;
   }
 
-  /**
-   * Positions beyond the gate several times in a row are no outliers: the position error has leapt (multipath, another mode of
-   * the receiver) or the filter has lost the vehicle. The position is set free, and what no Doppler reading holds with it.
-   */
-  #recover(i: number): void {
-    const p = this.covariance;
-    const use = this.#observations.use[i]!;
-    if ((use & USE.POSITION) === 0) return;
+  /** The position error has leapt (multipath, another mode of the receiver) while Doppler holds the rest: the position is set free. */
+  #freePosition(i: number): void {
     const dx = this.#observations.xM[i]! - this.state[0]!;
     const dy = this.#observations.yM[i]! - this.state[1]!;
-    p[0]! += dx * dx + dy * dy;
-    p[2]! += dx * dx + dy * dy;
-    if ((use & (USE.SPEED | USE.STANDING)) === 0) {
-      p[9]! += LOST_SPEED_VARIANCE;
-      p[14]! += LOST_ACCELERATION_VARIANCE;
-    }
-    if ((use & (USE.COURSE | USE.STANDING)) === 0) {
-      const v = Math.max(2, this.state[3]!);
-      p[5]! += LOST_HEADING_VARIANCE;
-      p[20]! += (LOST_LATERAL_MPS2 / (v * v)) ** 2;
-    }
+    this.covariance[0]! += dx * dx + dy * dy;
+    this.covariance[2]! += dx * dx + dy * dy;
     this.missed[0] = 0;
   }
 
@@ -381,7 +392,7 @@ export class MotionFilter {
     const o = this.#observations;
     const use = o.use[i]!;
     const { state, covariance: p } = this;
-    const { whiteM, stampSdS, lagS, speedMps, courseWhiteMps } = this.#parameters;
+    const { whiteM, stampSdS, speedMps, courseWhiteMps } = this.#parameters;
     const gate = this.#gate;
     const g = this.#seen;
     const size = RECORD.OBSERVATION_SIZE;
@@ -408,23 +419,19 @@ export class MotionFilter {
     } else if ((use & USE.SPEED) !== 0) {
       const speed = o.speedMps![i]!;
       const noise = (speedMps * speedMps + o.speedRounding) * o.dopplerFactor[i]! + lowSpeedVariance(speed);
-      columnSpeed(p, lagS, g);
-      const variance = g[3]! - lagS * g[4]! + noise;
-      this.#take(speed - (state[3]! - lagS * state[4]!), variance, record, at + 2 * size, 1, -lagS, 0, DOPPLER_GATE);
+      column(p, 0, 3, g);
+      this.#take(speed - state[3]!, g[3]! + noise, record, at + 2 * size, 1, 0, 0, DOPPLER_GATE);
     }
     if ((use & USE.COURSE) !== 0) {
       const reference = this.#reference;
       const measured = (use & USE.SPEED) !== 0 ? o.speedMps![i]! : state[3]!;
       const v = Math.max(LEAST_SPEED_FOR_COURSE_MPS, reference === null ? measured : reference.speedMps[i]!);
-      const back = -lagS * v;
       const slow = 1 / v;
       const noise = courseWhiteMps * courseWhiteMps * o.dopplerFactor[i]! * slow * slow + o.courseRoundingRad2;
-      columnCourse(p, back, slow, g);
-      const variance = g[2]! + back * g[5]! + slow * g[7]! + noise;
-      let expected = state[2]! + back * state[5]! + slow * state[7]!;
-      if (reference !== null && lagS !== 0) expected += laggedExcess(reference, o.timeS, i, lagS, back);
-      const innovation = wrapAngle(o.northRad[i]! - o.courseRad![i]! - expected);
-      this.#take(innovation, variance, record, at + 3 * size, 1, back, slow, DOPPLER_GATE);
+      columnCourse(p, slow, g);
+      const variance = g[2]! + slow * g[7]! + noise;
+      const innovation = wrapAngle(o.northRad[i]! - o.courseRad![i]! - state[2]! - slow * state[7]!);
+      this.#take(innovation, variance, record, at + 3 * size, 1, 0, slow, DOPPLER_GATE);
     }
     if (state[3]! < 0) state[3] = 0;
   }
@@ -505,53 +512,14 @@ function column2(p: Float64Array, cos: number, sin: number, out: Float64Array): 
   out[7] = cos * p[28]! + sin * p[29]!;
 }
 
-/** out := P H' for H = 1 on v, -lag on a. */
-function columnSpeed(p: Float64Array, lag: number, out: Float64Array): void {
-  out[0] = p[6]! - lag * p[10]!;
-  out[1] = p[7]! - lag * p[11]!;
-  out[2] = p[8]! - lag * p[12]!;
-  out[3] = p[9]! - lag * p[13]!;
-  out[4] = p[13]! - lag * p[14]!;
-  out[5] = p[18]! - lag * p[19]!;
-  out[6] = p[24]! - lag * p[25]!;
-  out[7] = p[31]! - lag * p[32]!;
-}
-
-/** out := P H' for H = 1 on theta, `back` on kappa, `slow` on the slow cross-track Doppler error. */
-function columnCourse(p: Float64Array, back: number, slow: number, out: Float64Array): void {
-  out[0] = p[3]! + back * p[15]! + slow * p[28]!;
-  out[1] = p[4]! + back * p[16]! + slow * p[29]!;
-  out[2] = p[5]! + back * p[17]! + slow * p[30]!;
-  out[3] = p[8]! + back * p[18]! + slow * p[31]!;
-  out[4] = p[12]! + back * p[19]! + slow * p[32]!;
-  out[5] = p[17]! + back * p[20]! + slow * p[33]!;
-  out[6] = p[23]! + back * p[26]! + slow * p[34]!;
-  out[7] = p[30]! + back * p[33]! + slow * p[35]!;
-}
-
-/**
- * theta_reference(t_i - lag) less its first-order value theta_i + back kappa_i: what the curvature's change within the lag adds
- * to the expected course.
- */
-function laggedExcess(reference: Reference, timeS: Float64Array, i: number, lag: number, back: number): number {
-  if (lag <= 0) return 0;
-  const t = timeS[i]! - lag;
-  let j = i;
-  while (j > 0 && timeS[j]! > t && i - j < 40) j--;
-  const heading = reference.headingRad;
-  const kappa = reference.curvaturePerM;
-  const speed = reference.speedMps;
-  if (timeS[j]! > t || timeS[j + 1]! - timeS[j]! > 3) return 0;
-  // Heading as a cubic between fixes j and j + 1, from its values and its rates v kappa at both.
-  const step = timeS[j + 1]! - timeS[j]!;
-  const u = (t - timeS[j]!) / step;
-  const rate0 = speed[j]! * kappa[j]! * step;
-  const rate1 = speed[j + 1]! * kappa[j + 1]! * step;
-  const difference = heading[j + 1]! - heading[j]!;
-  const lagged =
-    heading[j]! +
-    u * rate0 +
-    u * u * (3 * difference - 2 * rate0 - rate1) +
-    u * u * u * (rate0 + rate1 - 2 * difference);
-  return lagged - heading[i]! - back * kappa[i]!;
+/** out := P H' for H = 1 on theta, `slow` on the slow cross-track Doppler error. */
+function columnCourse(p: Float64Array, slow: number, out: Float64Array): void {
+  out[0] = p[3]! + slow * p[28]!;
+  out[1] = p[4]! + slow * p[29]!;
+  out[2] = p[5]! + slow * p[30]!;
+  out[3] = p[8]! + slow * p[31]!;
+  out[4] = p[12]! + slow * p[32]!;
+  out[5] = p[17]! + slow * p[33]!;
+  out[6] = p[23]! + slow * p[34]!;
+  out[7] = p[30]! + slow * p[35]!;
 }

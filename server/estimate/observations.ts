@@ -36,6 +36,8 @@ export interface Observations {
   readonly dopplerFactor: Float32Array;
   /** Factor on the strength of the curvature walk over the step that ends at the fix. */
   readonly walkFactor: Float32Array;
+  /** The same of the acceleration's random change. */
+  readonly jerkFactor: Float32Array;
   /** Rounding variances, q^2 / 12. */
   readonly positionRoundingM2: number;
   readonly speedRounding: number;
@@ -110,6 +112,7 @@ export function observe(run: Run, positionFactor: Float32Array, dopplerFactor: F
     positionFactor,
     dopplerFactor,
     walkFactor: new Float32Array(fixes.count).fill(1),
+    jerkFactor: new Float32Array(fixes.count).fill(1),
     positionRoundingM2: resolution.positionM ** 2 / 12,
     speedRounding: resolution.speedMps ** 2 / 12,
     courseRoundingRad2: resolution.courseRad ** 2 / 12,
@@ -134,6 +137,7 @@ export function subset(source: Observations, indices: readonly number[], restart
     positionFactor: pick32(source.positionFactor),
     dopplerFactor: pick32(source.dopplerFactor),
     walkFactor: pick32(source.walkFactor),
+    jerkFactor: pick32(source.jerkFactor),
   };
 }
 

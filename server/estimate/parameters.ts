@@ -24,8 +24,6 @@ export interface Parameters {
   readonly courseSlowMps: number;
   /** Correlation time of the slow Doppler error, s. */
   readonly dopplerTimeS: number;
-  /** Course and speed refer to an instant this long before the position stamp, s. */
-  readonly lagS: number;
 }
 
 /** Relaxation time of the acceleration, s: braking and traction hold for several seconds. */

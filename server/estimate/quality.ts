@@ -59,6 +59,10 @@ export function describeQuality(
   const positionInformation = 1 / (position.white + position.wander);
   const courseInformation = share(withCourse) / course;
   const useful = share(withCourse) > 0.5 ? courseTotal / courseEffective : position.white * positionInformation;
+  const lag =
+    withCourse > 0
+      ? { ...tuned.lagsFound.course, lagS: tuned.lags.courseS }
+      : { ...tuned.lagsFound.speed, lagS: tuned.lags.speedS };
   const noise: NoiseModel = {
     sigmaWhiteM: parameters.whiteM,
     sigmaWanderM: wanderSd(parameters.diffusion, WANDER_TIME_S),
@@ -67,8 +71,8 @@ export function describeQuality(
     sigmaDopplerSlowMps: withCourse > 0 ? parameters.courseSlowMps : 0,
     dopplerTimeS: parameters.dopplerTimeS,
     sigmaSpeedMps: withSpeed > 0 ? tuned.speedSdMps : 0,
-    lagS: parameters.lagS,
-    lagSdS: tuned.lagSdS,
+    lagS: lag.lagS,
+    lagSdS: Number.isFinite(lag.sdS) ? lag.sdS : 0,
   };
   return {
     noise,

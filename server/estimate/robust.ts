@@ -38,13 +38,12 @@ export function reviewFix(
     if (factor > 1) o.positionFactor[i]! *= factor;
   }
   if ((use & (USE.SPEED | USE.STANDING)) === USE.SPEED) {
-    const residual = o.speedMps![i]! - (state[3]! - parameters.lagS * state[4]!);
+    const residual = o.speedMps![i]! - state[3]!;
     residuals.speed[i] = residual / Math.sqrt(parameters.speedMps ** 2 + o.speedRounding);
   }
   if ((use & USE.COURSE) !== 0) {
     const v = Math.max(LEAST_SPEED_FOR_COURSE_MPS, state[3]!);
-    const expected = state[2]! - parameters.lagS * v * state[5]! + state[7]! / v;
-    const residual = v * wrapAngle(o.northRad[i]! - o.courseRad![i]! - expected);
+    const residual = v * wrapAngle(o.northRad[i]! - o.courseRad![i]! - state[2]! - state[7]! / v);
     residuals.course[i] = residual / Math.sqrt(parameters.courseWhiteMps ** 2 + o.courseRoundingRad2 * v * v);
   }
 }

@@ -10,8 +10,9 @@ const HEADING_VARIANCE_WITH_COURSE = 0.1;
 const POSITION_VARIANCE_M2 = 100;
 const SPEED_VARIANCE = 9;
 const ACCELERATION_VARIANCE = 0.25;
-/** Curvature before anything is known of it: a radius of 50 m is one standard deviation. */
-const CURVATURE_VARIANCE = 0.02 ** 2;
+/** Curvature before anything is known of it: a radius of 40 m, or a lateral acceleration of 1.5 m/s^2, is one standard deviation. */
+const CURVATURE_SD_PER_M = 0.025;
+const LATERAL_SD_MPS2 = 1.5;
 
 /** Writes the state and covariance before fix i is taken in. The heading comes from the first course or the first displacement of 12 m. */
 export function writeStart(
@@ -52,7 +53,7 @@ export function writeStart(
   covariance[5] = headingVariance;
   covariance[9] = SPEED_VARIANCE;
   covariance[14] = ACCELERATION_VARIANCE;
-  covariance[20] = CURVATURE_VARIANCE;
+  covariance[20] = Math.min(CURVATURE_SD_PER_M, LATERAL_SD_MPS2 / Math.max(1, speed * speed)) ** 2;
   covariance[27] = parameters.curvatureWalk / (2 * parameters.changeLengthM);
   covariance[35] = parameters.courseSlowMps ** 2;
 }

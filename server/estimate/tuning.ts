@@ -1,3 +1,5 @@
+import type { DopplerLags } from './lag.ts';
+import { advanceDoppler, dropMissing, estimateLags, lagsToCorrect } from './lag.ts';
 import { MotionFilter } from './motion-filter.ts';
 import { effectiveVariance } from './noise.ts';
 import { nelderMead } from './nelder-mead.ts';
@@ -73,7 +75,8 @@ export function tuningSubset(observations: Observations, stride: number): Observ
 
 /** Deviance of the subset under the parameters, with outliers counted by the logarithm of their size. */
 export function deviance(observations: Observations, parameters: Parameters): number {
-  const filter = new MotionFilter(observations, parameters, null, GATE);
+  // The filter marks where it starts afresh: on a copy, so that no trial leaves its marks to the next.
+  const filter = new MotionFilter({ ...observations, use: observations.use.slice() }, parameters, null, GATE);
   filter.advance(0, observations.count, null);
   return filter.deviance;
 }
@@ -99,12 +102,12 @@ export const STARTING_PARAMETERS: Parameters = {
   courseWhiteMps: PRIOR.doppler.centre / Math.SQRT2,
   courseSlowMps: PRIOR.doppler.centre / Math.SQRT2,
   dopplerTimeS: PRIOR.dopplerTimeS.centre,
-  lagS: 0,
 };
 
 export interface Tuned {
   readonly parameters: Parameters;
-  readonly lagSdS: number;
+  readonly lags: ReturnType<typeof lagsToCorrect>;
+  readonly lagsFound: DopplerLags;
   /** Sd of one speed reading, m/s (Parameters.speedMps is enlarged for correlation). */
   readonly speedSdMps: number;
 }
@@ -116,6 +119,7 @@ export interface Tuned {
  */
 export function tune(observations: Observations, intervalS: number, wholeSecondStamps: boolean): Tuned {
   const stride = Math.max(1, Math.round(THINNED_INTERVAL_S / intervalS));
+  const found = estimateLags(observations, intervalS);
   const thin = tuningSubset(observations, stride);
   const hasSpeed = channelUsed(thin, USE.SPEED);
   const hasCourse = channelUsed(thin, USE.COURSE);
@@ -136,12 +140,6 @@ export function tune(observations: Observations, intervalS: number, wholeSecondS
   }
   best = refine(thin, best, typicalSpeed, hasSpeed, hasCourse, 100);
 
-  let lagSdS = 0;
-  if (hasSpeed || hasCourse) {
-    const lag = findLag(thin, best);
-    lagSdS = lag.sd;
-    if (Math.abs(lag.lag) > 2 * lag.sd) best = { ...best, lagS: lag.lag };
-  }
   if (wholeSecondStamps && hasSpeed) {
     let value = deviance(thin, best);
     for (const stampSdS of [0.05, 0.1, 0.2]) {
@@ -152,12 +150,20 @@ export function tune(observations: Observations, intervalS: number, wholeSecondS
       }
     }
   }
-  if (best.lagS !== 0 || best.stampSdS !== 0) best = refine(thin, best, typicalSpeed, hasSpeed, hasCourse, 40);
+  if (best.stampSdS !== 0) best = refine(thin, best, typicalSpeed, hasSpeed, hasCourse, 40);
   if (stride > 1) best = splitErrors(tuningSubset(observations, 1), best, hasCourse);
-  const speedSdMps = best.speedMps;
+  const lags = lagsToCorrect(found);
+  if (lags.courseS !== 0 || lags.speedS !== 0) {
+    // Doppler noise is tuned on the readings as they came: advancing them interpolates, which blurs errors without curing them.
+    // The position noise had to make up for the lag until here.
+    const advanced = { ...thin, ...advanceDoppler(thin, lags, null) };
+    dropMissing(advanced);
+    best = refinePositionNoise(advanced, best);
+  }
   const ratio = best.courseSlowMps / best.courseWhiteMps;
   const inflation = effectiveVariance(1, ratio, intervalS, best.dopplerTimeS) / (1 + ratio * ratio);
-  return { parameters: { ...best, speedMps: speedSdMps * Math.sqrt(inflation) }, lagSdS, speedSdMps };
+  const parameters = { ...best, speedMps: best.speedMps * Math.sqrt(inflation) };
+  return { parameters, lags, lagsFound: found, speedSdMps: best.speedMps };
 }
 
 /** Median speed of the moving fixes, from the speed channel or the displacements; 10 m/s where nothing moves. */
@@ -212,6 +218,18 @@ function refine(
   return unpack(nelderMead(objective, start, steps, evaluations, 0.5).x);
 }
 
+/** The position noise alone, everything else held. */
+function refinePositionNoise(thin: Observations, from: Parameters): Parameters {
+  const unpack = (x: readonly number[]): Parameters => ({
+    ...from,
+    whiteM: Math.exp(x[0]!),
+    diffusion: Math.exp(x[1]!),
+  });
+  const objective = (x: readonly number[]): number =>
+    penalty(x[0]!, PRIOR.whiteM) + penalty(x[1]!, PRIOR.diffusion) + deviance(thin, unpack(x));
+  return unpack(nelderMead(objective, [Math.log(from.whiteM), Math.log(from.diffusion)], [0.4, -0.7], 24, 0.5).x);
+}
+
 /** At the full rate of a fast log: white and slow parts of the errors and their correlation time, motion held. */
 function splitErrors(full: Observations, from: Parameters, hasCourse: boolean): Parameters {
   const unpack = (x: readonly number[]): Parameters => {
@@ -239,30 +257,4 @@ function splitErrors(full: Observations, from: Parameters, hasCourse: boolean): 
   };
   const steps = start.map(() => 0.5);
   return unpack(nelderMead(objective, start, steps, 60, 0.5).x);
-}
-
-/** Delay of course and speed against the positions, by the likelihood: a coarse scan, then the vertex of a parabola. */
-function findLag(thin: Observations, parameters: Parameters): { readonly lag: number; readonly sd: number } {
-  const at = (lagS: number): number => deviance(thin, { ...parameters, lagS });
-  const unknown = { lag: 0, sd: 1 };
-  let grid = [-0.5, 0, 0.5, 1, 1.5];
-  let values = grid.map(at);
-  let k = values.indexOf(Math.min(...values));
-  const centre = grid[k]!;
-  grid = [centre - 0.4, centre - 0.2, centre, centre + 0.2, centre + 0.4];
-  values = grid.map((lag, j) => (j === 2 ? values[k]! : at(lag)));
-  k = Math.max(1, Math.min(3, values.indexOf(Math.min(...values))));
-  const fine = parabola(values[k - 1]!, values[k]!, values[k + 1]!, 0.2);
-  const wide = parabola(values[0]!, values[2]!, values[4]!, 0.4);
-  const vertex = fine.curvature > 0 ? { ...fine, from: grid[k]! } : { ...wide, from: centre };
-  if (!(vertex.curvature > 0)) return unknown;
-  // The deviance is twice the negative logarithm of the likelihood: variance = 2 / its second derivative.
-  const lag = vertex.from + Math.max(-0.4, Math.min(0.4, vertex.offset));
-  if (Math.abs(lag) > 1.5) return unknown;
-  return { lag, sd: Math.max(0.01, Math.sqrt(2 / vertex.curvature)) };
-}
-
-function parabola(below: number, middle: number, above: number, step: number): { offset: number; curvature: number } {
-  const curvature = (below - 2 * middle + above) / (step * step);
-  return { offset: -(above - below) / (2 * step) / curvature, curvature };
 }

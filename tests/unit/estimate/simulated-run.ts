@@ -134,6 +134,7 @@ export function simulateRun(
   let heading = random() * 6;
   let piece = 0;
   const headings: number[] = [];
+  const speeds: number[] = [];
   for (let i = 0; i < n; i++) {
     truth.chainageM[i] = chainage;
     truth.xM[i] = x;
@@ -143,6 +144,7 @@ export function simulateRun(
     timeS[i] = i * receiver.intervalS;
     for (let k = 0; k < per; k++) {
       headings.push(heading);
+      speeds.push(v);
       while (breakAt[piece + 1]! < chainage) piece++;
       const u = (chainage - breakAt[piece]!) / (breakAt[piece + 1]! - breakAt[piece]!);
       const curvature = breakCurvature[piece]! + u * (breakCurvature[piece + 1]! - breakCurvature[piece]!);
@@ -225,7 +227,8 @@ export function simulateRun(
     const cross = worse * (slowC + half * normal());
     const along = worse * (slowV + half * normal());
     const lagged = headings[Math.max(0, i * per - Math.round(receiver.lagS / step))]!;
-    speedMps[i] = Math.hypot(speed + along, speed < 0.3 ? cross : 0);
+    const laggedSpeed = speeds[Math.max(0, i * per - Math.round(receiver.lagS / step))]!;
+    speedMps[i] = Math.hypot(laggedSpeed + along, laggedSpeed < 0.3 ? cross : 0);
     const theta = lagged + Math.atan2(cross, Math.max(0.1, speed));
     courseRad[i] = receiver.hasCourse && speed > 1.2 ? Math.PI / 2 - theta : NaN;
     if (speed < 0.05 && (receiver.hasSpeed ? speedMps[i]! < 0.3 : true)) flags[i] = FLAG.STOPPED;
