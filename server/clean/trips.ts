@@ -8,8 +8,10 @@ import { pickTrack, placeOf, type Track } from './track.ts';
 export const TRIP_GAP_S = 1200;
 /** No vehicle of interest is faster, m/s. */
 const MOST_SPEED_MPS = 120;
-/** Change of speed that no vehicle of interest exceeds, m/s². */
+/** Change of speed that no vehicle of interest exceeds in a moment, and one that none keeps up, m/s². */
 const MOST_ACCELERATION_MPS2 = 6;
+const LASTING_ACCELERATION_MPS2 = 2;
+const MOMENT_S = 2;
 /** Error of position allowed between two fixes before motion has to explain their distance, m. */
 const POSITION_SLACK_M = 25;
 /** A receiver whose positions lagged behind catches up by leaps ahead of at most this, m, ... */
@@ -47,7 +49,9 @@ function speedNear(track: Track, fixes: FixColumns, piece: Piece, i: number): nu
 
 /** True when a vehicle near `speed` at either end can have gone `distance` in `dt` seconds. */
 function reachable(distance: number, dt: number, speed: number): boolean {
-  const fastest = Math.min(MOST_SPEED_MPS, speed + MOST_ACCELERATION_MPS2 * dt);
+  const gained =
+    MOST_ACCELERATION_MPS2 * Math.min(dt, MOMENT_S) + LASTING_ACCELERATION_MPS2 * Math.max(0, dt - MOMENT_S);
+  const fastest = Math.min(MOST_SPEED_MPS, speed + gained);
   return distance <= fastest * dt + POSITION_SLACK_M;
 }
 
@@ -113,51 +117,89 @@ function isCatchUp(track: Track, fixes: FixColumns, previous: Piece, next: Piece
   return aheadOf(from, previous.end - 1) || aheadOf(next.start, to);
 }
 
+/** Fixes that may be left out on either side of a jump, where false ones crept up to it by steps small enough. */
+const MOST_TRIM = 8;
+
+/** How a piece is joined to an earlier one: fixes left out at the end of that one and at the start of this. */
+interface Join {
+  readonly cost: number;
+  readonly trimEnd: number;
+  readonly trimStart: number;
+}
+
+const NO_JOIN: Join = { cost: Infinity, trimEnd: 0, trimStart: 0 };
+
+/** The cheapest way (in fixes lost) from `previous` to `next` that motion explains. */
+function joinOf(track: Track, fixes: FixColumns, previous: Piece, next: Piece, adjacent: boolean): Join {
+  const fits = (i: number, j: number): boolean => {
+    const speed = Math.max(
+      speedNear(track, fixes, { start: previous.start, end: i + 1 }, i),
+      speedNear(track, fixes, { start: j, end: next.end }, j),
+    );
+    return reachable(between(track, fixes, i, j), track.utcS[j]! - track.utcS[i]!, speed);
+  };
+  if (fits(previous.end - 1, next.start)) return { cost: 0, trimEnd: 0, trimStart: 0 };
+  if (isCatchUp(track, fixes, previous, next)) return { cost: CATCH_UP_COST, trimEnd: 0, trimStart: 0 };
+  if (!adjacent) return NO_JOIN;
+  for (let cost = 1; cost <= MOST_TRIM; cost++) {
+    for (let trimStart = 0; trimStart <= cost; trimStart++) {
+      const [i, j] = [previous.end - 1 - (cost - trimStart), next.start + trimStart];
+      if (i >= previous.start && j < next.end && fits(i, j)) return { cost, trimEnd: cost - trimStart, trimStart };
+    }
+  }
+  return NO_JOIN;
+}
+
 /**
- * The chain of pieces with most fixes in which each can be reached from the one before; indices into `pieces`.
+ * The chain of pieces with most fixes in which each can be reached from the one before: the stretches of the track
+ * that it takes, in order. Some fixes beside a jump may be left out of their piece.
  */
-function bestChain(track: Track, fixes: FixColumns, pieces: readonly Piece[]): number[] {
+function bestChain(track: Track, fixes: FixColumns, pieces: readonly Piece[]): Piece[] {
   const score = new Float64Array(pieces.length);
   const from = new Int32Array(pieces.length).fill(-1);
+  const joins: Join[] = pieces.map(() => NO_JOIN);
   let best = 0;
   for (let k = 0; k < pieces.length; k++) {
     const piece = pieces[k]!;
     const size = piece.end - piece.start;
     score[k] = size;
-    const speedHere = speedNear(track, fixes, piece, piece.start);
     for (let m = k - 1; m >= Math.max(0, k - LOOK_BACK); m--) {
       const gain = score[m]! + size;
       if (gain <= score[k]!) continue;
-      const previous = pieces[m]!;
-      const dt = track.utcS[piece.start]! - track.utcS[previous.end - 1]!;
-      const speed = Math.max(speedHere, speedNear(track, fixes, previous, previous.end - 1));
-      const cost = reachable(between(track, fixes, previous.end - 1, piece.start), dt, speed)
-        ? 0
-        : isCatchUp(track, fixes, previous, piece)
-          ? CATCH_UP_COST
-          : Infinity;
-      if (gain - cost > score[k]!) {
-        score[k] = gain - cost;
+      const join = joinOf(track, fixes, pieces[m]!, piece, m === k - 1);
+      if (gain - join.cost > score[k]!) {
+        score[k] = gain - join.cost;
         from[k] = m;
+        joins[k] = join;
       }
     }
     if (score[k]! > score[best]!) best = k;
   }
-  const chain: number[] = [];
-  for (let k = best; k >= 0; k = from[k]!) chain.push(k);
+  const chain: Piece[] = [];
+  let trimEnd = 0;
+  for (let k = best; k >= 0; k = from[k]!) {
+    const join = from[k]! >= 0 ? joins[k]! : { trimStart: 0, trimEnd: 0 };
+    chain.push({ start: pieces[k]!.start + join.trimStart, end: pieces[k]!.end - trimEnd });
+    trimEnd = join.trimEnd;
+  }
   return chain.reverse();
 }
 
-/** A left-over stretch is a trip of its own only when it is at least this long. */
+/** A left-over stretch is a trip of its own only when it has at least this many fixes and this long. */
 const LEAST_TRIP_FIXES = 8;
 const LEAST_TRIP_S = 20;
+/** A left-over stretch this long inside the time of a chain splits the chain instead of being left out. */
+const LEAST_SPLIT_S = 60;
 /** Share of left-over fixes that lie between fixes of the chain, each within about one interval, for a second vehicle. */
 const INTERLEAVED = 0.5;
+/** Leaps after which a log is no journey: the rest is left out. */
+const MOST_DEPTH = 40;
 
 /**
- * One stretch of time into trips: the best chain of plausible pieces is a trip; what lies before or after it is
- * looked at in the same way; what lies within its time is a second vehicle when it alternates with the chain fix by
- * fix, and false fixes, left out and counted, when not.
+ * One stretch of time into trips: the best chain of plausible pieces is a trip. What is left over of it is
+ * - a second vehicle, when it alternates with the chain fix by fix;
+ * - looked at in the same way, when it lies before or after the chain or is long: the run is split there;
+ * - false fixes, left out and counted, when it is short.
  */
 function untangle(track: Track, fixes: FixColumns, file: string, log: FindingLog, out: Track[], depth: number): void {
   const n = track.rows.length;
@@ -167,82 +209,93 @@ function untangle(track: Track, fixes: FixColumns, file: string, log: FindingLog
     out.push(track);
     return;
   }
+  if (depth > MOST_DEPTH) {
+    dropJumps(track, fixes, file, log);
+    return;
+  }
   const chain = bestChain(track, fixes, pieces);
-  noteCatchUps(track, fixes, file, log, pieces, chain);
-  const inChain = new Set(chain);
-  const first = pieces[chain[0]!]!.start;
-  const last = pieces[chain.at(-1)!]!.end;
-  const taken: number[] = [];
-  const within: number[] = [];
-  pieces.forEach((piece, k) => {
-    if (inChain.has(k)) for (let i = piece.start; i < piece.end; i++) taken.push(i);
-    else if (piece.start >= first && piece.end <= last) for (let i = piece.start; i < piece.end; i++) within.push(i);
-  });
-  const outside = (from: number, to: number): void => {
-    if (to <= from) return;
-    const rest = pickTrack(
+  noteCatchUps(track, fixes, file, log, chain);
+  const stretch = (from: number, to: number) =>
+    pickTrack(
       track,
       Array.from({ length: to - from }, (_, i) => from + i),
     );
-    const long = to - from >= LEAST_TRIP_FIXES && track.utcS[to - 1]! - track.utcS[from]! >= LEAST_TRIP_S;
-    if (long && depth < 40) {
-      log.note(
-        'position-leap',
-        'serious',
-        (many) =>
-          `At ${counted(many, 'place')} the position leaps farther than any motion explains and stays there: the run is split, and one side may lie beside the line`,
-        placeOf(fixes, file, track.rows[from === 0 ? to : from]!, track.utcS[from === 0 ? to : from]!),
-      );
-      untangle(rest, fixes, file, log, out, depth + 1);
-    } else dropJumps(rest, fixes, file, log);
+  const durationS = (from: number, to: number) => (to > from ? track.utcS[to - 1]! - track.utcS[from]! : 0);
+  const apart = (from: number, to: number): void => {
+    log.note(
+      'position-leap',
+      'serious',
+      (many) =>
+        `At ${counted(many, 'place')} the position leaps farther than any motion explains and stays there: the run is split, and one side may lie beside the line`,
+      placeOf(fixes, file, track.rows[from === 0 ? to : from]!, track.utcS[from === 0 ? to : from]!),
+    );
+    untangle(stretch(from, to), fixes, file, log, out, depth + 1);
   };
-  outside(0, first);
-  out.push(pickTrack(track, taken));
-  if (within.length > 0) {
-    const rest = pickTrack(track, within);
-    if (depth < 40 && alternates(track, taken, within)) {
-      log.note(
-        'two-vehicles',
-        'warning',
-        (many) => `The log alternates between ${counted(many + 1, 'vehicle')}: each is a run of its own`,
-        placeOf(fixes, file, rest.rows[0]!, rest.utcS[0]!),
-      );
-      untangle(rest, fixes, file, log, out, depth + 1);
-    } else dropJumps(rest, fixes, file, log);
+
+  const second = alternating(track, chain);
+  if (second !== null) {
+    log.note(
+      'two-vehicles',
+      'warning',
+      (many) => `The log alternates between ${counted(many + 1, 'vehicle')}: each is a run of its own`,
+      placeOf(fixes, file, track.rows[second[0]!]!, track.utcS[second[0]!]!),
+    );
+    untangle(pickTrack(track, second), fixes, file, log, out, depth + 1);
   }
-  outside(last, n);
+  let taken: number[] = [];
+  let at = 0;
+  for (const piece of [...chain, { start: n, end: n }]) {
+    const [from, to] = [at, piece.start];
+    const edge = from === 0 || to === n;
+    const long = to - from >= LEAST_TRIP_FIXES && durationS(from, to) >= (edge ? LEAST_TRIP_S : LEAST_SPLIT_S);
+    if (to > from && second === null) {
+      if (long) {
+        if (!edge) {
+          out.push(pickTrack(track, taken));
+          taken = [];
+        }
+        apart(from, to);
+      } else dropJumps(stretch(from, to), fixes, file, log);
+    }
+    for (let i = piece.start; i < piece.end; i++) taken.push(i);
+    at = piece.end;
+  }
+  if (taken.length > 0) out.push(pickTrack(track, taken));
 }
 
-function noteCatchUps(
-  track: Track,
-  fixes: FixColumns,
-  file: string,
-  log: FindingLog,
-  pieces: readonly Piece[],
-  chain: readonly number[],
-): void {
+/** What the chain leaves over, when more than half of it stands between neighbours of the chain; else null. */
+function alternating(track: Track, chain: readonly Piece[]): number[] | null {
+  const n = track.rows.length;
+  const isTaken = new Uint8Array(n);
+  let taken = 0;
+  for (const { start, end } of chain) {
+    isTaken.fill(1, start, end);
+    taken += end - start;
+  }
+  const rest: number[] = [];
+  let flanked = 0;
+  for (let i = 0; i < n; i++) {
+    if (isTaken[i] === 1) continue;
+    rest.push(i);
+    if (isTaken[i - 1] === 1 && isTaken[i + 1] === 1) flanked++;
+  }
+  return rest.length >= LEAST_TRIP_FIXES && rest.length >= 0.2 * taken && flanked >= INTERLEAVED * rest.length
+    ? rest
+    : null;
+}
+
+function noteCatchUps(track: Track, fixes: FixColumns, file: string, log: FindingLog, chain: readonly Piece[]): void {
   for (let c = 1; c < chain.length; c++) {
-    const [last, next] = [pieces[chain[c - 1]!]!.end - 1, pieces[chain[c]!]!.start];
-    const dt = track.utcS[next]! - track.utcS[last]!;
-    if (reachable(between(track, fixes, last, next), dt, speedNear(track, fixes, pieces[chain[c]!]!, next))) continue;
+    const [previous, next] = [chain[c - 1]!, chain[c]!];
+    if (joinOf(track, fixes, previous, next, false).cost === 0) continue;
     log.note(
       'catch-up',
       'warning',
       (many) =>
         `At ${counted(many, 'place')} the positions leap ahead along the line (the receiver lagged behind and caught up): what lies just before is less sure`,
-      placeOf(fixes, file, track.rows[next]!, track.utcS[next]!),
+      placeOf(fixes, file, track.rows[next.start]!, track.utcS[next.start]!),
     );
   }
-}
-
-/** True when more than half of `within` have a neighbour of `taken` on both sides in the track. */
-function alternates(track: Track, taken: readonly number[], within: readonly number[]): boolean {
-  if (within.length < LEAST_TRIP_FIXES || within.length < 0.2 * taken.length) return false;
-  const isTaken = new Uint8Array(track.rows.length);
-  for (const i of taken) isTaken[i] = 1;
-  let between = 0;
-  for (const i of within) if (isTaken[i - 1] === 1 && isTaken[i + 1] === 1) between++;
-  return between >= INTERLEAVED * within.length;
 }
 
 function dropJumps(track: Track, fixes: FixColumns, file: string, log: FindingLog): void {
