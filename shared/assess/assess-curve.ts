@@ -4,7 +4,7 @@ import type { Verdict } from '../schema/common.ts';
 import { mpsToKmh, radToDeg } from '../units.ts';
 import { comfortCurveTransitionPct, comfortDiscreteEventPct } from '../curving/comfort-index.ts';
 import { staticStabilityFactor } from '../curving/static-stability.ts';
-import { CRITERIA } from '../limits/criteria.ts';
+import { CRITERIA, criterionOf } from '../limits/criteria.ts';
 import { entryOf } from '../limits/lookup.ts';
 import type { BodyModel, BodyMotion } from './body-motion.ts';
 import { bodyMotion, comfortOf } from './body-motion.ts';
@@ -88,7 +88,7 @@ function comfortFigures(curveCase: CurveCase, model: BodyModel | null, motion: B
 function measureAll(curveCase: CurveCase, setup: Setup, figures: ComfortFigures): (Measured | Unmeasured)[] {
   const { vehicle, limits } = setup;
   const shared = [
-    common.speed(curveCase),
+    common.speed(curveCase, setup),
     common.lateralTrack(curveCase),
     common.lateralBody(curveCase, vehicle),
     common.jerk(curveCase),
@@ -150,7 +150,7 @@ function notesOf(
       `${setup.mode === 'rail' ? 'Cant' : 'Superelevation'} unknown: values hold for zero and are upper bounds.`,
     );
     const open = judged.find((j) => j.result.verdict === 'undecided' && j.measured?.isBound === true);
-    if (open !== undefined) notes.push(`${open.result.criterion}: ${open.result.reason}.`);
+    if (open !== undefined) notes.push(`${criterionOf(open.result.criterion).name}: ${open.result.reason}.`);
   }
   if (curve.observedShare < WELL_OBSERVED) {
     notes.push(`Seen by good fixes on ${num(100 * curve.observedShare, 0)} % of the passage only.`);
@@ -206,9 +206,10 @@ export function assessCurve(run: string, curveCase: CurveCase, setup: Setup, wit
   const { curve } = passage;
   const model = bodyModel(setup);
   const motion = model === null ? null : motionAt(curveCase, model, 1);
+  const isDynamic = model !== null && model.roll !== null;
   const figures = comfortFigures(curveCase, model, motion);
   const judged = measureAll(curveCase, setup, figures).map((m) => judge(m, setup, facts.radiusM, withWorking));
-  if (withWorking && motion !== null && model?.roll != null) addDynamics(judged, motion);
+  if (withWorking && motion !== null && isDynamic) addDynamics(judged, motion);
 
   const worst = governing(judged);
   const needs = needsOf(judged);
@@ -282,7 +283,7 @@ export function assessCurve(run: string, curveCase: CurveCase, setup: Setup, wit
     notes: notesOf(curveCase, setup, judged, cures.map(cureText), motion),
   };
   const dynamics: BodyDynamics | null =
-    motion === null || model?.roll == null
+    motion === null || !isDynamic || !Number.isFinite(motion.peakBodyMps2)
       ? null
       : {
           peakBodyMps2: motion.peakBodyMps2,

@@ -1,4 +1,5 @@
 import type { Vehicle } from '../schema/vehicle.ts';
+import type { Limit } from '../schema/limit-set.ts';
 import type { Setup } from '../schema/setup.ts';
 import { mpsToKmh, STANDARD_GRAVITY_MPS2 } from '../units.ts';
 import { bodyAccelerationMps2 } from '../curving/body-acceleration.ts';
@@ -35,7 +36,7 @@ function planeCant(curveCase: CurveCase, speedMps: number, limitMps2: number): n
   return mode === 'rail' ? facts.baseMm * Math.sin(theta) : 100 * Math.tan(theta);
 }
 
-export function planeName(curveCase: CurveCase): string {
+function planeName(curveCase: CurveCase): string {
   return curveCase.mode === 'rail' ? 'D/b' : 'sin(atan e)';
 }
 
@@ -139,9 +140,41 @@ export function jerk(curveCase: CurveCase): Measured | Unmeasured {
   };
 }
 
-export function speed(curveCase: CurveCase): Measured {
+/** The station where the speed stands worst against the permitted speed of the line, with that speed; null without one here. */
+function againstPermitted(curveCase: CurveCase, setup: Setup): { index: number; permittedKmh: number } | null {
+  const { chainageM, speedMps } = curveCase.facts.passage;
+  let worst: { index: number; permittedKmh: number } | null = null;
+  for (const { fromM, toM, speedKmh } of setup.permittedSpeeds ?? []) {
+    for (let i = 0; i < chainageM.length; i++) {
+      if (chainageM[i]! < fromM || chainageM[i]! > toM) continue;
+      const share = speedMps[i]! / speedKmh;
+      if (worst === null || share > speedMps[worst.index]! / worst.permittedKmh)
+        worst = { index: i, permittedKmh: speedKmh };
+    }
+  }
+  return worst;
+}
+
+function permittedLimit(permittedKmh: number): Limit {
+  return {
+    criterion: 'speed',
+    bands: [{ normal: permittedKmh, exceptional: null }],
+    source: { document: 'operator', clause: 'permitted speed profile of the line', year: null, status: 'operator' },
+  };
+}
+
+export function speed(curveCase: CurveCase, setup: Setup): Measured {
   const { facts } = curveCase;
-  const { mps, sdMps } = facts.top;
+  const permitted = againstPermitted(curveCase, setup);
+  const { passage } = facts;
+  const { mps, sdMps, chainageM } =
+    permitted === null
+      ? facts.top
+      : {
+          mps: passage.speedMps[permitted.index]!,
+          sdMps: passage.speedSdMps[permitted.index]!,
+          chainageM: passage.chainageM[permitted.index]!,
+        };
   const value = mpsToKmh(mps);
   const half = mpsToKmh(facts.z * sdMps);
   return {
@@ -152,9 +185,13 @@ export function speed(curveCase: CurveCase): Measured {
     isBound: false,
     speedMps: mps,
     speedSdMps: sdMps,
-    formula: 'V, highest over the curve and its transitions',
-    substituted: () => `${num(mps, 2)} m/s × 3.6`,
+    formula:
+      permitted === null
+        ? 'V, highest over the curve and its transitions'
+        : 'V where it stands highest against the permitted speed',
+    substituted: () => `${num(mps, 2)} m/s × 3.6 at ${num(chainageM, 0)} m`,
     remarks: [],
+    ...(permitted === null ? {} : { placeLimit: permittedLimit(permitted.permittedKmh) }),
     speedFor: (limit) => limit / 3.6,
   };
 }

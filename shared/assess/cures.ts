@@ -1,6 +1,7 @@
 import type { Setup } from '../schema/setup.ts';
 import type { Cure } from '../schema/curve-row.ts';
 import { formatQuantity, STANDARD_GRAVITY_MPS2 } from '../units.ts';
+import { criterionOf } from '../limits/criteria.ts';
 import { limitFor } from '../limits/lookup.ts';
 import type { CurveCase } from './lateral-frame.ts';
 import type { Judged } from './verdict.ts';
@@ -71,6 +72,11 @@ function againstTransition(curveCase: CurveCase, neededM: number): string {
   return growth > arc ? `the circular part of ${num(arc, 0)} m is too short for it at this radius` : '';
 }
 
+/** Names of the criteria among `failing` that a cure does not touch. */
+function namesWithout(failing: readonly Judged[], cures: (j: Judged) => boolean): string[] {
+  return failing.filter((j) => !cures(j)).map((j) => criterionOf(j.result.criterion).name.toLowerCase());
+}
+
 function notCured(others: readonly string[]): string {
   return others.length > 0 ? `does not cure ${others.join(', ')}` : '';
 }
@@ -91,7 +97,7 @@ export function curesOf(
   const needs = needsOf(judged);
   const bySpeed = failing.filter((j) => j.measured?.speedFor !== undefined);
   if (needs.speedKmh !== null && bySpeed.length > 0) {
-    const others = failing.filter((j) => j.measured?.speedFor === undefined).map((j) => j.result.criterion);
+    const others = namesWithout(failing, (j) => j.measured?.speedFor !== undefined);
     cures.push({
       kind: 'speed',
       value: needs.speedKmh,
@@ -105,7 +111,7 @@ export function curesOf(
   if (byCant.length > 0 && setup.mode === 'rail' && needs.cantMm !== null) {
     // Cant is laid in whole millimetres; the need is rounded up.
     const cantMm = Math.ceil(needs.cantMm - 1e-9);
-    const others = failing.filter((j) => j.measured?.cantFor === undefined).map((j) => j.result.criterion);
+    const others = namesWithout(failing, (j) => j.measured?.cantFor !== undefined);
     const against = againstCant(curveCase, setup, cantMm);
     cures.push({
       kind: 'cant',
@@ -121,7 +127,7 @@ export function curesOf(
   const byLength = failing.filter((j) => j.measured?.transitionFor !== undefined);
   if (byLength.length > 0) {
     const lengthM = Math.max(...byLength.map((j) => j.result.neededTransitionM ?? 0));
-    const others = failing.filter((j) => j.measured?.transitionFor === undefined).map((j) => j.result.criterion);
+    const others = namesWithout(failing, (j) => j.measured?.transitionFor !== undefined);
     const against = againstTransition(curveCase, lengthM);
     cures.push({
       kind: 'transition',
@@ -141,7 +147,7 @@ export function curesOf(
 export function cureText(cure: Cure): string {
   const what = { speed: 'Speed', cant: 'Cant', transition: 'Transition' }[cure.kind];
   const value = formatQuantity(cure.value, cure.unit, 0);
-  const state = cure.feasible ? 'would comply' : `is not enough or not open: ${cure.against}`;
+  const state = cure.feasible ? 'would comply' : `would not do: ${cure.against}`;
   const cost = cure.timeCostS !== null && cure.timeCostS > 0 ? ` at a cost of ${num(cure.timeCostS, 1)} s` : '';
   return `${what} ${value} ${state}${cost}.`;
 }

@@ -6,7 +6,7 @@ import { assessRun } from './assess-run.ts';
 import type { ProfileInput } from './profile.ts';
 
 /** What slowing for one curve costs and brings. */
-export interface CurveAdvice {
+interface CurveAdvice {
   readonly curve: number;
   /** Speed that complies at the chosen confidence, km/h; null when the curve needs none or no speed cures it. */
   readonly permittedKmh: number | null;

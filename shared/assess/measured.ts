@@ -1,4 +1,4 @@
-import type { CriterionId } from '../schema/limit-set.ts';
+import type { CriterionId, Limit } from '../schema/limit-set.ts';
 import type { Interval } from './confidence.ts';
 
 /** A criterion's figure on one curve, before it meets its limit. */
@@ -12,6 +12,8 @@ export interface Measured extends Interval {
   /** Formula, and the same with numbers and units; made only when somebody reads them. */
   readonly formula: string;
   readonly substituted: () => string;
+  /** A limit that comes with the place rather than with the set: the permitted speed of the line. */
+  readonly placeLimit?: Limit;
   /** Sentences that belong to the figure. */
   readonly remarks: readonly string[];
   /**

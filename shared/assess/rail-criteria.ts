@@ -4,7 +4,7 @@ import { mpsToKmh, radToDeg, STANDARD_GRAVITY_MPS2 } from '../units.ts';
 import { abruptDeficiencyChangeMm } from '../curving/abrupt-change.ts';
 import { cantDeficiencyMm, speedForDeficiencyMps } from '../curving/cant-deficiency.ts';
 import { cantGradientMmPerM } from '../curving/cant-gradient.ts';
-import { equilibriumCantMm } from '../curving/equilibrium-cant.ts';
+import { equilibriumCantMm, equilibriumSpeedMps } from '../curving/equilibrium-cant.ts';
 import { rateOfChange, speedForDeficiencyRateMps, transitionLengthForRateM } from '../curving/rate-of-change.ts';
 import { entryOf } from '../limits/lookup.ts';
 import type { EndFacts, SpeedAt } from './curve-facts.ts';
@@ -14,7 +14,7 @@ import { cantRatioChange, rateInterval, lateralInterval } from './lateral-frame.
 import type { Measured, Unmeasured } from './measured.ts';
 import { num, radiusText } from './text.ts';
 
-export const NO_CANT = 'the cant is not known: give a cant register or a rule';
+const NO_CANT = 'the cant is not known: give a cant register or a rule';
 export const NEVER_RAN = 'the vehicle stood or crawled on the whole curve';
 
 const G = `${STANDARD_GRAVITY_MPS2} m/s²`;
@@ -45,7 +45,13 @@ export function cantDeficiency(curveCase: CurveCase): Measured | Unmeasured {
     formula: 'I = b v² / (g R) - D',
     substituted: () =>
       `${num(baseMm, 0)} mm × ${speedText(speed)} / (${G} × ${radiusText(facts.radiusM)}) - ${cantText(curveCase)}`,
-    remarks: [],
+    remarks:
+      cantMm > 0
+        ? [
+            `Equilibrium cant ${num(equilibriumCantMm(speed.mps, facts.curvaturePerM, baseMm), 1)} mm; equilibrium speed of ${num(cantMm, 0)} mm ` +
+              `${num(mpsToKmh(equilibriumSpeedMps(cantMm, facts.curvaturePerM, baseMm)), 1)} km/h.`,
+          ]
+        : [],
     speedFor: (limit, sure) =>
       speedForDeficiencyMps(limit, sure ? facts.curvatureHighPerM : facts.curvaturePerM, cantMm, baseMm),
     cantFor: (limit) => equilibriumCantMm(speed.mps, facts.curvaturePerM, baseMm) - limit,
@@ -322,9 +328,4 @@ export function largestBelow(figure: (speedMps: number) => number, limit: number
 export function equilibriumCant(curveCase: CurveCase): number | null {
   const { fastest, curvaturePerM, baseMm } = curveCase.facts;
   return fastest === null ? null : equilibriumCantMm(fastest.mps, curvaturePerM, baseMm);
-}
-
-/** Speed shown beside a figure, km/h. */
-export function kmhText(speed: SpeedAt): string {
-  return `${num(mpsToKmh(speed.mps), 1)} km/h`;
 }

@@ -1,12 +1,12 @@
 import type { Verdict } from '../schema/common.ts';
 import type { CriterionResult } from '../schema/curve-row.ts';
-import type { CriterionId } from '../schema/limit-set.ts';
+import type { CriterionId, Limit } from '../schema/limit-set.ts';
 import type { Setup } from '../schema/setup.ts';
 import { mpsToKmh, formatQuantity } from '../units.ts';
 import { roundDownToStep } from '../curving/advisory-speed.ts';
 import { criterionOf } from '../limits/criteria.ts';
 import type { AppliedLimit } from '../limits/lookup.ts';
-import { bandValue, describeSource, entryOf, limitFor } from '../limits/lookup.ts';
+import { bandValue, describeSource, entryOf, limitFor, limitIn } from '../limits/lookup.ts';
 import type { Measured, Unmeasured } from './measured.ts';
 import { isMeasured } from './measured.ts';
 import { intervalText, num } from './text.ts';
@@ -31,8 +31,9 @@ export function complyingKmh(
   criterion: CriterionId,
   radiusM: number,
   speedFor: (limit: number) => number,
+  placeLimit?: Limit,
 ): number | null {
-  const entry = entryOf(setup.limits, criterion);
+  const entry = placeLimit ?? entryOf(setup.limits, criterion);
   let best: number | null = null;
   for (const band of entry?.bands ?? []) {
     if (radiusM < (band.minRadiusM ?? -Infinity) || radiusM > (band.maxRadiusM ?? Infinity)) continue;
@@ -103,12 +104,15 @@ function figureLines(measured: Measured, setup: Setup): string[] {
 /** Meets a figure with its limit. `withWorking` false leaves the lines out (trials of many curves at once). */
 export function judge(found: Measured | Unmeasured, setup: Setup, radiusM: number, withWorking: boolean): Judged {
   const { criterion } = found;
-  if (!isMeasured(found)) {
-    const working = withWorking ? [`${criterionOf(criterion).name}: not assessed, ${found.missing}.`] : [];
-    return { result: notAssessed(criterion, found.missing, null, working), measured: null, applied: null };
+  if (!isMeasured(found) || Number.isNaN(found.value)) {
+    const missing = isMeasured(found) ? 'the speed is not known here' : found.missing;
+    const working = withWorking ? [`${criterionOf(criterion).name}: not assessed, ${missing}.`] : [];
+    return { result: notAssessed(criterion, missing, null, working), measured: null, applied: null };
   }
   const { unit, sense } = criterionOf(criterion);
-  const applied = limitFor(setup.limits, criterion, setup.tier, mpsToKmh(found.speedMps), radiusM);
+  const applied = found.placeLimit
+    ? limitIn(found.placeLimit, setup.tier, mpsToKmh(found.speedMps), radiusM)
+    : limitFor(setup.limits, criterion, setup.tier, mpsToKmh(found.speedMps), radiusM);
   const lines = withWorking ? figureLines(found, setup) : [];
   if (applied === null) {
     const has = entryOf(setup.limits, criterion) !== null;
@@ -123,8 +127,12 @@ export function judge(found: Measured | Unmeasured, setup: Setup, radiusM: numbe
   const utilisation = sense === 'most' ? found.value / limit : limit / found.value;
   const { speedStepKmh } = setup.limits;
   const { speedFor, cantFor, transitionFor } = found;
-  const exact = speedFor ? complyingKmh(setup, criterion, radiusM, (value) => speedFor(value, false)) : null;
-  const sure = speedFor ? complyingKmh(setup, criterion, radiusM, (value) => speedFor(value, true)) : null;
+  const exact = speedFor
+    ? complyingKmh(setup, criterion, radiusM, (value) => speedFor(value, false), found.placeLimit)
+    : null;
+  const sure = speedFor
+    ? complyingKmh(setup, criterion, radiusM, (value) => speedFor(value, true), found.placeLimit)
+    : null;
   const cant = cantFor ? Math.max(cantFor(limit), 0) : null;
   const transition = transitionFor ? transitionFor(limit) : null;
   const reason = undecidedReason(verdict, found, limit, cant, setup);

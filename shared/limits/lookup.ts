@@ -10,7 +10,7 @@ export interface AppliedLimit {
 }
 
 /** True when a band holds at a speed (km/h) and radius (m); both its bounds belong to it. */
-export function bandApplies(band: LimitBand, speedKmh: number, radiusM: number): boolean {
+function bandApplies(band: LimitBand, speedKmh: number, radiusM: number): boolean {
   return (
     speedKmh >= (band.minSpeedKmh ?? -Infinity) &&
     speedKmh <= (band.maxSpeedKmh ?? Infinity) &&
@@ -31,10 +31,17 @@ export function entryOf(set: LimitSet, criterion: CriterionId): Limit | null {
   return null;
 }
 
-/**
- * The limit that applies at a speed (km/h) and radius (m): the first matching band of the criterion's entry.
- * Null when the set has no entry, no matching band or no value: the criterion is then not assessed.
- */
+/** The limit of one entry that applies at a speed (km/h) and radius (m): its first matching band; null without band or value. */
+export function limitIn(limit: Limit, tier: Tier, speedKmh: number, radiusM: number): AppliedLimit | null {
+  for (const band of limit.bands) {
+    if (!bandApplies(band, speedKmh, radiusM)) continue;
+    const found = bandValue(band, tier);
+    return found === null ? null : { value: found.value, tier: found.tier, limit };
+  }
+  return null;
+}
+
+/** The same of a whole set; null, too, when it has no entry for the criterion, which is then not assessed. */
 export function limitFor(
   set: LimitSet,
   criterion: CriterionId,
@@ -43,13 +50,7 @@ export function limitFor(
   radiusM: number,
 ): AppliedLimit | null {
   const limit = entryOf(set, criterion);
-  if (limit === null) return null;
-  for (const band of limit.bands) {
-    if (!bandApplies(band, speedKmh, radiusM)) continue;
-    const found = bandValue(band, tier);
-    return found === null ? null : { value: found.value, tier: found.tier, limit };
-  }
-  return null;
+  return limit === null ? null : limitIn(limit, tier, speedKmh, radiusM);
 }
 
 /** Source in one line: document, clause, year and how the value was obtained. */

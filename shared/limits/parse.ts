@@ -1,4 +1,4 @@
-import { z } from 'zod';
+import type { z } from 'zod';
 import { BendbookError } from '../model/fault.ts';
 import { LimitSet } from '../schema/limit-set.ts';
 import { Vehicle } from '../schema/vehicle.ts';

@@ -30,6 +30,10 @@ export const Setup = z.object({
   confidence: z.number().gt(0.5).lt(1),
   /** Cant tried on single curves instead of the register's or the rule's; rail mm, road percent. */
   cantTrials: z.array(z.object({ curve: z.number().int(), value: z.number() })).optional(),
+  /** Permitted speed by run chainage, where the operator has one; the speed criterion then takes it for its limit. */
+  permittedSpeeds: z
+    .array(z.object({ fromM: z.number(), toM: z.number(), speedKmh: z.number().positive() }))
+    .optional(),
   /** Spacings of regular irregularities to look for resonance at, m: rail or expansion joints, slab lengths. */
   irregularitiesM: z.array(z.number().positive()).optional(),
 });

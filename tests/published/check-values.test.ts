@@ -52,14 +52,14 @@ const BY_PATTERN: readonly [RegExp, Compute][] = [
     (i) => {
       const v = kmhToMps(i.V_kmh!);
       const k = 1 / i.R_m!;
-      const I = cantDeficiencyMm(v, k, i.D_mm!, i.base_mm!, i.g!);
+      const I = cantDeficiencyMm(v, k, i.D_mm!, i.base_mm!, i.g);
       return {
-        D_eq_mm: equilibriumCantMm(v, k, i.base_mm!, i.g!),
+        D_eq_mm: equilibriumCantMm(v, k, i.base_mm!, i.g),
         D_eq_11_8_mm: equilibriumCantMm(v, k, 1500, 1500 / (11.8 * 12.96)),
         I_mm: I,
-        a_q: deficiencyToAccelerationMps2(I, i.base_mm!, i.g!),
-        a_exact: trackPlaneAccelerationMps2(v, k, i.D_mm!, i.base_mm!, i.g!),
-        a_horizontal: trackPlaneAccelerationMps2(v, k, 0, i.base_mm!, i.g!),
+        a_q: deficiencyToAccelerationMps2(I, i.base_mm!, i.g),
+        a_exact: trackPlaneAccelerationMps2(v, k, i.D_mm!, i.base_mm!, i.g),
+        a_horizontal: trackPlaneAccelerationMps2(v, k, 0, i.base_mm!, i.g),
       };
     },
   ],
@@ -89,7 +89,7 @@ const BY_PATTERN: readonly [RegExp, Compute][] = [
     /^versine\.\d/,
     (i) =>
       'c_m' in i
-        ? { exact_mm: 1000 * versineM(i.c_m!, i.R_m!) }
+        ? { exact_mm: 1000 * versineM(i.c_m, i.R_m!) }
         : { chord_def_in: versineM(62 * FT, radiusFromChordDegreeM(i.D!)) / 0.0254 },
   ],
   [

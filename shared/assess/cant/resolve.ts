@@ -8,7 +8,7 @@ import type { CurveCant } from '../curve-cant.ts';
 import { UNKNOWN_CANT } from '../curve-cant.ts';
 
 /** How the register's signs are read: cant in favour of the curve, or signed by the hand of the raised rail. */
-export type SignConvention = 'favour' | 'hand';
+type SignConvention = 'favour' | 'hand';
 
 /** What a register says of the run's curves, and what is wrong with it. */
 export interface ResolvedRegister {
@@ -31,7 +31,7 @@ interface Placed {
 }
 
 /** Run chainage of a register chainage: (c - offset) / stretch. */
-export function runChainageM(register: CantRegister, chainageM: number): number {
+function runChainageM(register: CantRegister, chainageM: number): number {
   return (chainageM - register.offsetM) / register.stretch;
 }
 

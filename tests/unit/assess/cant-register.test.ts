@@ -150,9 +150,12 @@ describe('laying a register onto a run', () => {
 
   it('by curve number, and by positions', () => {
     expect(cants(register([{ curve: 3, cantMm: 77 }]))).toEqual([null, null, 77, null]);
-    const placed = line.map(
-      (p, i) => ({ ...p, start: [51 + i, 4], middle: [51.001 + i, 4.002], end: [51.002 + i, 4.004] }) as Passage,
-    );
+    const placed = line.map((p, i) => ({
+      ...p,
+      start: [51 + i, 4],
+      middle: [51.001 + i, 4.002],
+      end: [51.002 + i, 4.004],
+    }));
     const reg = register([{ fromLatDeg: 53, fromLonDeg: 4, toLatDeg: 53.002, toLonDeg: 4.004, cantMm: 66 }]);
     expect(assessRun(run(placed), setup({ register: reg })).curves.map((c) => c.row.cant_source)).toEqual([
       'assumed',

@@ -131,7 +131,7 @@ describe('reading files', () => {
   });
 
   it('missing fields are named by their path', () => {
-    const { limits: _, ...rest } = limitSet('tram-metro');
+    const rest = { ...limitSet('tram-metro'), limits: undefined };
     expect(faultOf(() => parseLimitSet(JSON.stringify(rest)))).toMatchObject({
       code: 'limits/not-a-limit-set',
       cause: expect.stringContaining('limits') as string,
