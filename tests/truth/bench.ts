@@ -76,7 +76,7 @@ export function runCell(cell: Cell): CellResult {
     } catch (error) {
       score.failures += 1;
       score.notes.push(
-        `${sim.run.recordingName} failed: ${error instanceof Error ? (error.stack ?? error.message) : String(error)}`,
+        `${sim.run.recordingName} failed: ${error instanceof Error ? (error.stack ?? error.message).split('\n', 2).join('') : String(error)}`,
       );
     }
   }
