@@ -103,7 +103,7 @@ function measureAll(curveCase: CurveCase, setup: Setup, figures: ComfortFigures)
           rail.cantDeficiency(curveCase),
           rail.cantExcess(curveCase),
           rail.deficiencyRate(curveCase, limits),
-          rail.abruptChange(curveCase),
+          rail.abruptChange(curveCase, setup),
           rail.cantRate(curveCase),
           rail.cantGradient(curveCase),
           rail.rollRate(curveCase, vehicle),

@@ -9,3 +9,4 @@ export { parseCantRegister } from './cant/parse-register.ts';
 export { resonanceFindings } from './resonance.ts';
 export { runMotionDose } from './motion-dose.ts';
 export { fitRegister } from './cant/fit-register.ts';
+export { curveGeometryLines } from './geometry-text.ts';

@@ -1,15 +1,16 @@
 import type { RunPassages } from '../model/passage.ts';
 import type { Setup } from '../schema/setup.ts';
-import { kmhToMps } from '../units.ts';
+import { kmhToMps, mpsToKmh } from '../units.ts';
 import { drivableSpeedMps, timeLostS } from '../curving/speed-profile.ts';
 import { assessRun } from './assess-run.ts';
 import type { ProfileInput } from './profile.ts';
+import { stationFrom } from './stations.ts';
 
 /** What slowing for one curve costs and brings. */
 interface CurveAdvice {
   readonly curve: number;
-  /** Speed that complies at the chosen confidence, km/h; null when the curve needs none or no speed cures it. */
-  readonly permittedKmh: number | null;
+  /** Speed that complies at the chosen confidence, km/h. */
+  readonly permittedKmh: number;
   /** Running time lost when only this curve is obeyed, s. */
   readonly lostS: number;
   readonly utilisation: number | null;
@@ -32,26 +33,50 @@ export interface LineAdvice {
   readonly uncured: readonly number[];
 }
 
-/** Speed column with the permitted speed of some curves, Infinity elsewhere. */
-function permittedColumn(
-  profile: ProfileInput,
-  limits: readonly { fromM: number; toM: number; mps: number }[],
-): Float64Array {
-  const out = new Float64Array(profile.count).fill(Infinity);
-  for (const { fromM, toM, mps } of limits) {
-    for (let i = 0; i < profile.count; i++) {
-      const s = profile.chainageM[i]!;
-      if (s >= fromM && s <= toM && mps < out[i]!) out[i] = mps;
+interface SlowStretch {
+  readonly fromM: number;
+  readonly toM: number;
+  readonly mps: number;
+}
+
+/** Stations [from, to) of a profile as plain columns. */
+interface Stations {
+  readonly chainageM: Float64Array;
+  readonly speedMps: Float64Array;
+}
+
+function stationsOf(profile: ProfileInput, from: number, to: number): Stations {
+  const cut = (column: ArrayLike<number>): Float64Array =>
+    Float64Array.from({ length: to - from }, (_, i) => column[from + i]!);
+  return { chainageM: cut(profile.chainageM), speedMps: cut(profile.speedMps) };
+}
+
+/** Speed column with the permitted speed of some stretches, Infinity elsewhere. */
+function permittedColumn({ chainageM }: Stations, stretches: readonly SlowStretch[]): Float64Array {
+  const out = new Float64Array(chainageM.length).fill(Infinity);
+  for (const { fromM, toM, mps } of stretches) {
+    for (let i = stationFrom(chainageM, fromM); i < out.length && chainageM[i]! <= toM; i++) {
+      out[i] = Math.min(out[i]!, mps);
     }
   }
   return out;
 }
 
 /** The recorded speeds held under a drivable envelope of permitted ones. */
-function slowed(profile: ProfileInput, permitted: Float64Array, setup: Setup): Float64Array {
+function slowed(stations: Stations, permitted: Float64Array, setup: Setup): Float64Array {
   const { accelerationMps2, brakingMps2 } = setup.vehicle;
-  const envelope = drivableSpeedMps(profile.chainageM, permitted, accelerationMps2, brakingMps2);
-  return envelope.map((v, i) => Math.min(v, profile.speedMps[i]!));
+  const envelope = drivableSpeedMps(stations.chainageM, permitted, accelerationMps2, brakingMps2);
+  return envelope.map((v, i) => Math.min(v, stations.speedMps[i]!));
+}
+
+/** Time lost when one stretch alone is obeyed: only the stations within braking and accelerating distance of it are looked at. */
+function lostAloneS(profile: ProfileInput, stretch: SlowStretch, topMps: number, setup: Setup): number {
+  const { accelerationMps2, brakingMps2 } = setup.vehicle;
+  const square = topMps * topMps;
+  const from = Math.max(stationFrom(profile.chainageM, stretch.fromM - square / (2 * brakingMps2)) - 1, 0);
+  const to = Math.min(stationFrom(profile.chainageM, stretch.toM + square / (2 * accelerationMps2)) + 1, profile.count);
+  const near = stationsOf(profile, from, to);
+  return timeLostS(near.chainageM, near.speedMps, slowed(near, permittedColumn(near, [stretch]), setup));
 }
 
 /**
@@ -61,7 +86,7 @@ function slowed(profile: ProfileInput, permitted: Float64Array, setup: Setup): F
  */
 export function adviseLine(profile: ProfileInput, passages: RunPassages, setup: Setup): LineAdvice {
   const before = assessRun(passages, setup, { working: false }).curves;
-  const limits: { index: number; fromM: number; toM: number; mps: number }[] = [];
+  const limits: (SlowStretch & { readonly index: number })[] = [];
   const uncured: number[] = [];
   before.forEach(({ row, cures }, index) => {
     if (row.verdict !== 'over' && row.verdict !== 'undecided') return;
@@ -73,12 +98,15 @@ export function adviseLine(profile: ProfileInput, passages: RunPassages, setup: 
     limits.push({ index, fromM: curve.startM, toM: curve.endM, mps: kmhToMps(cure.value) });
   });
 
-  const permittedMps = permittedColumn(profile, limits);
-  const drivenMps = slowed(profile, permittedMps, setup);
+  const all = stationsOf(profile, 0, profile.count);
+  const permittedMps = permittedColumn(all, limits);
+  const drivenMps = slowed(all, permittedMps, setup);
+  const topMps = all.speedMps.reduce((top, v) => (v > top ? v : top), 0);
+  const byIndex = new Map(limits.map((limit) => [limit.index, limit]));
   const capped: RunPassages = {
     ...passages,
     passages: passages.passages.map((passage, index) => {
-      const limit = limits.find((l) => l.index === index);
+      const limit = byIndex.get(index);
       return limit === undefined
         ? passage
         : { ...passage, speedMps: passage.speedMps.map((v) => Math.min(v, limit.mps)) };
@@ -86,15 +114,14 @@ export function adviseLine(profile: ProfileInput, passages: RunPassages, setup: 
   };
   const after = assessRun(capped, setup, { working: false }).curves;
 
-  const order = limits.map(({ index, fromM, toM, mps }): CurveAdvice => {
+  const order = limits.map(({ index, ...stretch }): CurveAdvice => {
     const { row } = before[index]!;
-    const alone = slowed(profile, permittedColumn(profile, [{ fromM, toM, mps }]), setup);
-    const lostS = timeLostS(profile.chainageM, profile.speedMps, alone);
+    const lostS = lostAloneS(profile, stretch, topMps, setup);
     const utilisationAfter = after[index]!.row.utilisation;
     const gain = Math.max((row.utilisation ?? 0) - (utilisationAfter ?? 0), 0);
     return {
       curve: row.curve,
-      permittedKmh: mps * 3.6,
+      permittedKmh: mpsToKmh(stretch.mps),
       lostS,
       utilisation: row.utilisation,
       utilisationAfter,
@@ -102,5 +129,5 @@ export function adviseLine(profile: ProfileInput, passages: RunPassages, setup: 
     };
   });
   order.sort((a, b) => b.gainPerS - a.gainPerS || a.curve - b.curve);
-  return { permittedMps, drivenMps, lostS: timeLostS(profile.chainageM, profile.speedMps, drivenMps), order, uncured };
+  return { permittedMps, drivenMps, lostS: timeLostS(all.chainageM, all.speedMps, drivenMps), order, uncured };
 }

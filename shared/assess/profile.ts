@@ -12,6 +12,7 @@ import { curveCases } from './cases.ts';
 import type { CurveCase } from './lateral-frame.ts';
 import { effectiveTransitionM } from '../curving/abrupt-change.ts';
 import { cantBaseMm } from './curve-facts.ts';
+import { stationFrom } from './stations.ts';
 
 /** The columns of a Profile that an assessment reads; any array type, NaN = unknown. */
 export type ProfileInput = Pick<Profile, 'count' | 'spacingM'> &
@@ -68,18 +69,6 @@ const OF_ENDS = new Set<CriterionId>([
   'pct_standing',
   'entry_deceleration',
 ]);
-
-/** First station at or past a chainage, by bisection. */
-function stationFrom(chainageM: ArrayLike<number>, s: number): number {
-  let low = 0;
-  let high = chainageM.length;
-  while (low < high) {
-    const middle = (low + high) >> 1;
-    if (chainageM[middle]! < s) low = middle + 1;
-    else high = middle;
-  }
-  return low;
-}
 
 /**
  * Assessment along a run at the stations of its profile: the columns that bands, map and the profile export show. Figures come from

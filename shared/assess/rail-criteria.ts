@@ -1,4 +1,5 @@
 import type { LimitSet } from '../schema/limit-set.ts';
+import type { Setup } from '../schema/setup.ts';
 import type { Vehicle } from '../schema/vehicle.ts';
 import { mpsToKmh, radToDeg, STANDARD_GRAVITY_MPS2 } from '../units.ts';
 import { abruptDeficiencyChangeMm } from '../curving/abrupt-change.ts';
@@ -6,7 +7,7 @@ import { cantDeficiencyMm, speedForDeficiencyMps } from '../curving/cant-deficie
 import { cantGradientMmPerM } from '../curving/cant-gradient.ts';
 import { equilibriumCantMm, equilibriumSpeedMps } from '../curving/equilibrium-cant.ts';
 import { rateOfChange, speedForDeficiencyRateMps, transitionLengthForRateM } from '../curving/rate-of-change.ts';
-import { entryOf } from '../limits/lookup.ts';
+import { entryOf, limitFor } from '../limits/lookup.ts';
 import type { EndFacts, SpeedAt } from './curve-facts.ts';
 import type { Interval } from './confidence.ts';
 import type { CurveCase } from './lateral-frame.ts';
@@ -176,7 +177,7 @@ function deficiencyRateSpeed(
     : speedForDeficiencyRateMps(limit, dk, cantChange, length, facts.baseMm);
 }
 
-export function abruptChange(curveCase: CurveCase): Measured | Unmeasured {
+export function abruptChange(curveCase: CurveCase, setup: Setup): Measured | Unmeasured {
   const { facts } = curveCase;
   const { baseMm } = facts;
   const worst = worstEnd(
@@ -211,8 +212,19 @@ export function abruptChange(curveCase: CurveCase): Measured | Unmeasured {
       const dk = end.curvatureChangePerM * (sure ? facts.curvatureHighPerM / facts.curvaturePerM : 1);
       return speedForDeficiencyMps(limit, dk, 0, baseMm);
     },
-    transitionFor: () => 2 * end.lengthM,
+    ...transitionInstead(setup, end.fastest.mps, facts.radiusM, interval.value),
   };
+}
+
+/** What would take an abrupt change away is a transition long enough for the set's own rate of deficiency, where it has one. */
+function transitionInstead(
+  setup: Setup,
+  speedMps: number,
+  radiusM: number,
+  changeMm: number,
+): Pick<Measured, 'transitionFor'> {
+  const rate = limitFor(setup.limits, 'deficiency_rate', setup.tier, mpsToKmh(speedMps), radiusM);
+  return rate === null ? {} : { transitionFor: () => transitionLengthForRateM(changeMm, speedMps, rate.value) };
 }
 
 export function cantRate(curveCase: CurveCase): Measured | Unmeasured {

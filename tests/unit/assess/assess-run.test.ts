@@ -227,6 +227,8 @@ describe('ends of a curve', () => {
     expect(criterion(curve, 'abrupt_deficiency_change').value).toBeCloseTo(141.6, 1);
     expect(criterion(curve, 'abrupt_deficiency_change').verdict).toBe('over');
     expect(criterion(curve, 'deficiency_rate').verdict).toBe('not assessed');
+    // A transition that runs 141.6 mm off at 55 mm/s and 16.667 m/s.
+    expect(criterion(curve, 'abrupt_deficiency_change').neededTransitionM).toBeCloseTo((141.63 * 16.667) / 55, 1);
     expect(criterion(curve, 'cant_rate').reason).toContain('no transition');
   });
 
