@@ -10,7 +10,7 @@ const LEAST_SPEED_MPS = 2.5;
 const GREATEST_TURN_RAD = 0.6;
 /** Samples looked at, at most, whatever the length of the log. */
 const MOST_SAMPLES = 20_000;
-/** Neighbouring chords overlap and share their errors: variance of the slope times this. */
+/** Neighbouring chords overlap and share their errors: variance of the slope times this and the half chord in fixes. */
 const OVERLAP = 3;
 /** Longer lags are not believed, s. */
 const LONGEST_LAG_S = 1.5;
@@ -23,8 +23,17 @@ export interface Lag {
 
 /** Smaller lags are left alone, s. */
 const LEAST_LAG_S = 0.05;
-/** A lag of the speed known no better than this says nothing against the course's, s. */
-const UNCERTAIN_S = 0.15;
+/** Lag of ordinary receivers about none, and of their speed about that of their course, s (common practice, no source). */
+const USUAL_LAG_SD_S = 0.4;
+const SAME_LAG_SD_S = 0.05;
+
+/** Lags that are corrected, 0 where none is, and the sd of what remains, s. */
+export interface LagCorrection {
+  readonly courseS: number;
+  readonly courseSdS: number;
+  readonly speedS: number;
+  readonly speedSdS: number;
+}
 
 export interface DopplerLags {
   readonly course: Lag;
@@ -32,7 +41,11 @@ export interface DopplerLags {
 }
 
 /** Slope of y against x by least squares through the mean, three times with what lies beyond 3 robust sd left out. */
-function robustSlope(x: readonly number[], y: readonly number[]): { readonly slope: number; readonly sd: number } {
+function robustSlope(
+  x: readonly number[],
+  y: readonly number[],
+  overlap: number,
+): { readonly slope: number; readonly sd: number } {
   let slope = 0;
   let intercept = 0;
   let limit = Infinity;
@@ -59,7 +72,7 @@ function robustSlope(x: readonly number[], y: readonly number[]): { readonly slo
     // The median of |r| is 0.6745 sd for normal errors.
     const scale = sizes[Math.floor(sizes.length / 2)]! / 0.6745;
     limit = 3 * scale;
-    sd = scale * Math.sqrt(OVERLAP / spread);
+    sd = scale * Math.sqrt(overlap / spread);
   }
   return { slope, sd };
 }
@@ -100,23 +113,37 @@ export function estimateLags(observations: Observations, intervalS: number): Dop
       speedLess.push(speedMps[i]! - chordSpeed * (1 + (turned * turned) / 24));
     }
   }
-  return { course: toLag(turn, courseLess), speed: toLag(acceleration, speedLess) };
+  const overlap = Math.max(1, (OVERLAP * k) / stride);
+  return { course: toLag(turn, courseLess, overlap), speed: toLag(acceleration, speedLess, overlap) };
 }
 
-function toLag(rate: readonly number[], less: readonly number[]): Lag {
-  const { slope, sd } = robustSlope(rate, less);
+function toLag(rate: readonly number[], less: readonly number[], overlap: number): Lag {
+  const { slope, sd } = robustSlope(rate, less, overlap);
   return Math.abs(slope) > LONGEST_LAG_S ? { lagS: 0, sdS: Infinity } : { lagS: -slope, sdS: sd };
 }
 
 /**
- * The lags to correct, s: each channel's own where it can be told from none; speed's that of the course where its own is
- * too uncertain to say (both come from one velocity). Correcting a lag that is none would only blur the readings.
+ * The lags to correct and how uncertain they stay, s. Each estimate is weighed against what is known of receivers (a lag of a few
+ * tenths at most; course and speed come from one velocity), and corrected where it can be told from none: correcting a lag that
+ * is none would only blur the readings.
  */
-export function lagsToCorrect({ course, speed }: DopplerLags): { readonly courseS: number; readonly speedS: number } {
-  const told = ({ lagS, sdS }: Lag): boolean => Math.abs(lagS) > Math.max(LEAST_LAG_S, 3 * sdS);
-  const courseS = told(course) ? course.lagS : 0;
-  const same = Math.abs(speed.lagS - courseS) < 2 * speed.sdS || speed.sdS === Infinity;
-  return { courseS, speedS: told(speed) ? speed.lagS : courseS !== 0 && speed.sdS > UNCERTAIN_S && same ? courseS : 0 };
+export function lagsToCorrect({ course, speed }: DopplerLags): LagCorrection {
+  const c = weigh(course, 0, USUAL_LAG_SD_S);
+  const s =
+    course.sdS < Infinity ? weigh(speed, c.lagS, Math.hypot(c.sdS, SAME_LAG_SD_S)) : weigh(speed, 0, USUAL_LAG_SD_S);
+  const [courseS, courseSdS] = correction(c);
+  const [speedS, speedSdS] = correction(s);
+  return { courseS, courseSdS, speedS, speedSdS };
+}
+
+/** Estimate combined with a normal expectation. */
+function weigh(found: Lag, expectedS: number, sdS: number): Lag {
+  const trust = sdS ** 2 / (sdS ** 2 + found.sdS ** 2);
+  return { lagS: expectedS + trust * (found.lagS - expectedS), sdS: sdS * Math.sqrt(1 - trust) };
+}
+
+function correction({ lagS, sdS }: Lag): readonly [number, number] {
+  return Math.abs(lagS) > Math.max(LEAST_LAG_S, 2 * sdS) ? [lagS, sdS] : [0, Math.hypot(lagS, sdS)];
 }
 
 /** Beyond this many seconds between neighbours nothing is interpolated. */
@@ -130,7 +157,7 @@ const LONGEST_STEP_S = 3;
  */
 export function advanceDoppler(
   observations: Observations,
-  lags: { readonly courseS: number; readonly speedS: number },
+  lags: LagCorrection,
   indices: readonly number[] | null,
 ): { readonly speedMps: Float32Array | null; readonly courseRad: Float32Array | null } {
   const { speedMps, courseRad } = observations;

@@ -23,9 +23,7 @@ export interface Reference {
   readonly curvaturePerM: Float64Array;
 }
 
-/** Kinds of scalar observation, in the order in which they are taken in at a fix. */
-export const KIND = { ALONG: 0, CROSS: 1, SPEED: 2, COURSE: 3 } as const;
-/** The states that an observation of each kind sees: its first, second and third coefficient. */
+/** The states that the coefficients of an observation stand for, by kind: position along and across the track, speed, course. */
 export const SEEN: readonly (readonly [number, number, number])[] = [
   [0, 1, 7],
   [0, 1, 7],
@@ -97,8 +95,6 @@ export class MotionFilter {
   readonly missed = new Int32Array(1);
   /** Sum over observations of ln S + rho(e^2 / S), rho quadratic up to the gate and logarithmic beyond. */
   deviance = 0;
-  /** Number of observations in `deviance`. */
-  observationCount = 0;
   readonly #transition = new Float64Array(COEFFICIENTS);
   readonly #whole = new Float64Array(COEFFICIENTS);
   readonly #seen = new Float64Array(STATES);
@@ -453,7 +449,6 @@ export class MotionFilter {
     const ratio = square / variance;
     const s = ratio > gate ? square / gate : variance;
     this.deviance += Math.log(variance) + (ratio > TAIL_FROM ? TAIL_FROM + TAIL * Math.log(ratio / TAIL_FROM) : ratio);
-    this.observationCount++;
     const inverse = 1 / s;
     const scaled = innovation * inverse;
     for (let m = 0; m < STATES; m++) state[m]! += g[m]! * scaled;

@@ -24,20 +24,17 @@ export function describeQuality(
   let moving = 0;
   let withCourse = 0;
   let withSpeed = 0;
-  let known = 0;
   const sample: number[] = [];
   const stride = Math.max(1, Math.floor(count / 20_000));
   for (let i = 0; i < count; i++) {
-    if ((use[i]! & (USE.SPEED | USE.STANDING)) !== 0) known++;
     if (speedMps[i]! < MOVING_MPS) continue;
     moving++;
     if ((use[i]! & USE.COURSE) !== 0) withCourse++;
     if ((use[i]! & USE.SPEED) !== 0) withSpeed++;
     if (i % stride === 0) sample.push(speedMps[i]!);
   }
-  void known;
   sample.sort((a, b) => a - b);
-  const median = sample.length === 0 ? NaN : sample[Math.floor(sample.length / 2)]!;
+  const median = sample[Math.floor(sample.length / 2)] ?? MOVING_MPS;
   const interval = run.intervalS;
   const share = (n: number): number => (moving === 0 ? 0 : n / moving);
 
@@ -59,10 +56,7 @@ export function describeQuality(
   const positionInformation = 1 / (position.white + position.wander);
   const courseInformation = share(withCourse) / course;
   const useful = share(withCourse) > 0.5 ? courseTotal / courseEffective : position.white * positionInformation;
-  const lag =
-    withCourse > 0
-      ? { ...tuned.lagsFound.course, lagS: tuned.lags.courseS }
-      : { ...tuned.lagsFound.speed, lagS: tuned.lags.speedS };
+  const { courseS, courseSdS, speedS, speedSdS } = tuned.lags;
   const noise: NoiseModel = {
     sigmaWhiteM: parameters.whiteM,
     sigmaWanderM: wanderSd(parameters.diffusion, WANDER_TIME_S),
@@ -71,8 +65,8 @@ export function describeQuality(
     sigmaDopplerSlowMps: withCourse > 0 ? parameters.courseSlowMps : 0,
     dopplerTimeS: parameters.dopplerTimeS,
     sigmaSpeedMps: withSpeed > 0 ? tuned.speedSdMps : 0,
-    lagS: lag.lagS,
-    lagSdS: Number.isFinite(lag.sdS) ? lag.sdS : 0,
+    lagS: withCourse > 0 ? courseS : speedS,
+    lagSdS: withCourse > 0 ? courseSdS : withSpeed > 0 ? speedSdS : 0,
   };
   return {
     noise,

@@ -14,20 +14,24 @@ const SHORTEST_STEP_S = 0.15;
 const LONGEST_STEP_S = 2.5;
 const SUSPECT_FACTOR = 100;
 
+/** White position error taken for granted before the noise is known, m. */
+const ASSUMED_WHITE_M = 1;
+
+/** How many positions and how many Doppler readings are suspect. */
+export interface Suspects {
+  readonly positions: number;
+  readonly doppler: number;
+}
+
 /**
  * Enlarges the variance of what the raw columns alone show to be wrong, before any filter has followed it: single displaced
  * positions, and Doppler readings between which the vehicle would have turned or braked for one step as no vehicle can.
- *
- * @returns how many positions and how many Doppler readings are suspect
  */
-export function screen(
-  observations: Observations,
-  whiteM: number,
-): { readonly positions: number; readonly doppler: number } {
-  return { positions: screenPositions(observations, whiteM), doppler: screenDoppler(observations) };
+export function screen(observations: Observations): Suspects {
+  return { positions: screenPositions(observations), doppler: screenDoppler(observations) };
 }
 
-function screenPositions(o: Observations, whiteM: number): number {
+function screenPositions(o: Observations): number {
   const { count, timeS, xM, yM, use, positionFactor } = o;
   let found = 0;
   for (let i = 2; i + 2 < count; i++) {
@@ -48,8 +52,8 @@ function screenPositions(o: Observations, whiteM: number): number {
     const explained = 1.5 * (sx * sx + sy * sy);
     const total = dx * dx + dy * dy + bx * bx + by * by + ax * ax + ay * ay;
     const spike = Math.hypot(sx, sy);
-    if (spike < SPIKE_M + 4 * whiteM || explained < SPIKE_SHARE * total) continue;
-    positionFactor[i]! *= Math.max(1, (spike / whiteM) ** 2);
+    if (spike < SPIKE_M + 4 * ASSUMED_WHITE_M || explained < SPIKE_SHARE * total) continue;
+    positionFactor[i]! *= Math.max(1, (spike / ASSUMED_WHITE_M) ** 2);
     found++;
   }
   return found;

@@ -35,7 +35,7 @@ export function smooth(
   gate: number,
   sink: FixSink,
   onBlock: (share: number) => void,
-): { readonly finite: boolean; readonly deviance: number; readonly observationCount: number } {
+): boolean {
   const { count } = observations;
   const blocks = Math.ceil(count / BLOCK);
   const checkpoints = new Float64Array(blocks * CHECKPOINT);
@@ -47,11 +47,10 @@ export function smooth(
     checkpoints.set(filter.missed, b * CHECKPOINT + STATES + PACKED);
     filter.advance(b * BLOCK, Math.min(count, (b + 1) * BLOCK), null);
     if (!Number.isFinite(state[0]! + state[2]! + state[3]! + state[5]! + covariance[20]!)) {
-      return { finite: false, deviance: NaN, observationCount: 0 };
+      return false;
     }
     if ((b & 63) === 0) onBlock((0.4 * b) / blocks);
   }
-  const { deviance, observationCount } = filter;
 
   const record = new Float64Array(BLOCK * RECORD.SIZE);
   const lambda = new Float64Array(STATES);
@@ -75,7 +74,7 @@ export function smooth(
       timesPacked(record, at + RECORD.COVARIANCE, lambda, smoothed);
       for (let m = 0; m < STATES; m++) smoothed[m] = record[at + m]! - smoothed[m]!;
       if (!Number.isFinite(smoothed[0]! + smoothed[2]! + smoothed[5]!)) {
-        return { finite: false, deviance: NaN, observationCount: 0 };
+        return false;
       }
       sink(i, smoothed, record, at, lambda, Lambda);
       if (record[at + RECORD.STARTS] === 1) {
@@ -88,7 +87,7 @@ export function smooth(
     }
     if ((b & 63) === 0) onBlock(1 - (0.6 * b) / blocks);
   }
-  return { finite: true, deviance, observationCount };
+  return true;
 }
 
 /** lambda := (I - K H)' lambda - H' e/S and Lambda := (I - K H)' Lambda (I - K H) + H' H / S for one recorded observation. */

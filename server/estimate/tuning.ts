@@ -1,4 +1,4 @@
-import type { DopplerLags } from './lag.ts';
+import type { LagCorrection } from './lag.ts';
 import { advanceDoppler, dropMissing, estimateLags, lagsToCorrect } from './lag.ts';
 import { MotionFilter } from './motion-filter.ts';
 import { effectiveVariance } from './noise.ts';
@@ -89,7 +89,7 @@ function channelUsed(observations: Observations, bit: number): boolean {
 }
 
 /** Parameters before anything is known of the log. */
-export const STARTING_PARAMETERS: Parameters = {
+const STARTING_PARAMETERS: Parameters = {
   curvatureWalk: 1e-7,
   walkExponent: 0,
   typicalSpeedMps: 10,
@@ -106,8 +106,7 @@ export const STARTING_PARAMETERS: Parameters = {
 
 export interface Tuned {
   readonly parameters: Parameters;
-  readonly lags: ReturnType<typeof lagsToCorrect>;
-  readonly lagsFound: DopplerLags;
+  readonly lags: LagCorrection;
   /** Sd of one speed reading, m/s (Parameters.speedMps is enlarged for correlation). */
   readonly speedSdMps: number;
 }
@@ -163,7 +162,7 @@ export function tune(observations: Observations, intervalS: number, wholeSecondS
   const ratio = best.courseSlowMps / best.courseWhiteMps;
   const inflation = effectiveVariance(1, ratio, intervalS, best.dopplerTimeS) / (1 + ratio * ratio);
   const parameters = { ...best, speedMps: best.speedMps * Math.sqrt(inflation) };
-  return { parameters, lags, lagsFound: found, speedSdMps: best.speedMps };
+  return { parameters, lags, speedSdMps: best.speedMps };
 }
 
 /** Median speed of the moving fixes, from the speed channel or the displacements; 10 m/s where nothing moves. */
