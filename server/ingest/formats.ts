@@ -2,9 +2,15 @@ import type { Recording, RecordingFormat } from '../../shared/model/recording.ts
 import type { ByteSource } from './byte-source.ts';
 import { looksDelimited } from './delimited/dialect.ts';
 import { readDelimited } from './delimited/read.ts';
+import { isFit } from './fit-container.ts';
+import { readFit } from './fit.ts';
+import { readGeoJson } from './geojson.ts';
 import { readGpx } from './gpx.ts';
+import { readIgc } from './igc.ts';
+import { readKml } from './kml.ts';
 import { readNmea } from './nmea.ts';
 import type { ReadContext } from './options.ts';
+import { readTcx } from './tcx.ts';
 
 /** What a recogniser is shown of a file: its first bytes, as they are and as text (NULs removed). */
 export interface Head {
@@ -32,7 +38,24 @@ const rootIs = (name: string) => {
 
 /** Formats in the order in which they are asked; the first that recognises the content reads it. */
 export const FORMATS: readonly Format[] = [
+  { name: 'fit', recognises: ({ bytes }) => isFit(bytes), read: readFit },
   { name: 'gpx', recognises: rootIs('gpx'), read: readGpx },
+  { name: 'tcx', recognises: rootIs('TrainingCenterDatabase'), read: readTcx },
+  { name: 'kml', recognises: rootIs('kml'), read: readKml },
+  {
+    name: 'geojson',
+    recognises: ({ text }) =>
+      /^\s*\{/.test(text) &&
+      /"type"\s*:\s*"(?:Feature|FeatureCollection|GeometryCollection|(?:Multi)?(?:Point|LineString|Polygon))"/.test(
+        text,
+      ),
+    read: readGeoJson,
+  },
+  {
+    name: 'igc',
+    recognises: ({ text }) => /^\s*A\w{3}/.test(text) && /^B\d{13}[NS]\d{8}[EW][AV]/m.test(text.replaceAll('\r', '\n')),
+    read: readIgc,
+  },
   {
     name: 'nmea',
     recognises: ({ text }) => /\$[A-Z]{2}(?:RMC|GGA|GNS|GLL|VTG|GSA|GSV|GST|ZDA),/.test(text),

@@ -7,6 +7,7 @@ import { courseFromDegrees, FixBuilder, wrapLongitude } from './fix-builder.ts';
 import { readGpxDetails } from './gpx-details.ts';
 import type { ReadContext } from './options.ts';
 import { parseIso, type Stamp } from './timestamp.ts';
+import { noteXmlEnd } from './xml-findings.ts';
 import { readXml } from './xml-stream.ts';
 
 /** The document without track points, for gpxparser, is cut off here. */
@@ -186,25 +187,10 @@ export async function readGpx(source: ByteSource, context: ReadContext): Promise
       path = path.slice(0, 1);
     },
   });
-  if (end.cutOff) {
-    // The last point may lack what came after the cut; it is kept when it has its time.
-    const half = inPoint && good && Number.isNaN(fixes.utcAt(fixes.count - 1));
-    if (half) fixes.dropLast();
-    log.note(
-      'cut-off',
-      'warning',
-      () => 'The file ends before its end: the recording was cut off; all points up to there are kept',
-      { file: source.name, line: end.lines },
-      half ? 1 : 0,
-    );
-  }
-  noteText(log, note, source.name);
-  if (end.givenUp !== null) {
-    log.note('given-up', 'serious', () => 'Too many damaged places: the rest of the file was not read', {
-      file: source.name,
-      line: end.givenUp.line,
-    });
-  }
+  // The last point may lack what came after the cut; it is kept when it has its time.
+  const half = end.cutOff && inPoint && good && Number.isNaN(fixes.utcAt(fixes.count - 1));
+  if (half) fixes.dropLast();
+  noteXmlEnd(log, end, note, source.name, half ? 1 : 0);
 
   const waypoints: Waypoint[] = [];
   if (details) {
@@ -235,18 +221,4 @@ export async function readGpx(source: ByteSource, context: ReadContext): Promise
     columns: [],
     findings: log.findings(),
   };
-}
-
-/** Notes bytes that belong to no character of the encoding. */
-export function noteText(log: FindingLog, note: TextNote, file: string): void {
-  if (note.replaced > 0) {
-    log.note(
-      'bad-characters',
-      'warning',
-      (n) => `${counted(n, 'byte')} that are no ${ENCODING_NAMES[note.encoding]} character`,
-      { file },
-      0,
-      note.replaced,
-    );
-  }
 }

@@ -2,6 +2,7 @@ import { BendbookError, type Fault } from '../../shared/model/fault.ts';
 import type { Recording } from '../../shared/model/recording.ts';
 import type { ColumnNames } from '../../shared/schema/api.ts';
 import { requireUsable } from './acceptance.ts';
+import { gunzipped, isGzip, isZip, zipMembers } from './archive.ts';
 import { fileSource, readHead, type ByteSource } from './byte-source.ts';
 import { previewDelimited, type DelimitedPreview } from './delimited/preview.ts';
 import { detectEncoding } from './encoding.ts';
@@ -21,30 +22,92 @@ export async function headOf(source: ByteSource): Promise<Head> {
   return { bytes, text: new TextDecoder(detectEncoding(bytes)).decode(bytes).replaceAll('\0', '') };
 }
 
-/** Reads one log of any format. Throws BendbookError when nothing can come of it. */
-async function readOne(source: ByteSource, context: ReadContext): Promise<Recording> {
-  const head = await headOf(source);
-  if (head.text.trim() === '') {
-    throw new BendbookError('ingest/empty', {
-      cause: head.bytes.length === 0 ? 'The file is empty (0 bytes)' : 'The file holds nothing but blanks',
+/** Archives inside archives are opened this deep. */
+const MAX_NESTING = 2;
+
+/** Gathers the outcome of one file: each log a recording or a refusal. */
+class Ingestion {
+  readonly recordings: Recording[] = [];
+  readonly refused: { name: string; fault: Fault }[] = [];
+  readonly #context: ReadContext;
+  readonly #signal: AbortSignal | undefined;
+
+  constructor(context: ReadContext, signal: AbortSignal | undefined) {
+    this.#context = context;
+    this.#signal = signal;
+  }
+
+  /**
+   * Reads a log or the members of an archive. Throws only when cancelled.
+   * @param path The file itself where `source` is a file on disk.
+   */
+  async take(source: ByteSource, path: string | null, nesting: number): Promise<void> {
+    try {
+      this.#signal?.throwIfAborted();
+      const head = await headOf(source);
+      if (isGzip(head.bytes) || isZip(head.bytes)) await this.#archive(source, path, head, nesting);
+      else this.recordings.push(await this.#log(source, head));
+    } catch (error) {
+      this.refuse(source.name, error);
+    }
+  }
+
+  refuse(name: string, error: unknown): void {
+    if (this.#signal?.aborted === true) throw error;
+    this.refused.push({ name, fault: faultOf(error, name) });
+  }
+
+  async #archive(source: ByteSource, path: string | null, head: Head, nesting: number): Promise<void> {
+    if (nesting >= MAX_NESTING) {
+      throw new BendbookError('ingest/nested-archive', {
+        cause: 'The archive holds archives in archives',
+        place: { file: source.name },
+        remedy: 'Unpack it yourself and load the logs',
+      });
+    }
+    if (isGzip(head.bytes)) {
+      await this.take(gunzipped(source), null, nesting + 1);
+      return;
+    }
+    let members = 0;
+    for await (const member of zipMembers(source, path)) {
+      members++;
+      if ('error' in member) this.refuse(member.name, member.error);
+      else await this.take(member.source, null, nesting + 1);
+    }
+    if (members === 0) {
+      throw new BendbookError('ingest/empty', {
+        cause: 'The archive holds no files',
+        place: { file: source.name },
+        remedy: 'Pack the logs again',
+      });
+    }
+  }
+
+  /** Reads one log of any format. Throws BendbookError when nothing can come of it. */
+  async #log(source: ByteSource, head: Head): Promise<Recording> {
+    if (head.text.trim() === '') {
+      throw new BendbookError('ingest/empty', {
+        cause: head.bytes.length === 0 ? 'The file is empty (0 bytes)' : 'The file holds nothing but blanks',
+        place: { file: source.name, byte: 0 },
+        remedy: 'Export or copy the log again: it was not written or not transferred',
+      });
+    }
+    const format = FORMATS.find(({ recognises }) => recognises(head));
+    if (format !== undefined) return requireUsable(await format.read(source, this.#context));
+    throw new BendbookError('ingest/not-a-log', {
+      cause: 'The content is of no format that is known here',
       place: { file: source.name, byte: 0 },
-      remedy: 'Export or copy the log again: it was not written or not transferred',
+      remedy: `Use one of: ${FORMATS.map(({ name }) => name.toUpperCase()).join(', ')}, or a zip or gzip archive of them`,
     });
   }
-  for (const format of FORMATS) {
-    if (format.recognises(head)) return requireUsable(await format.read(source, context));
-  }
-  throw new BendbookError('ingest/not-a-log', {
-    cause: 'The content is of no format that is known here',
-    place: { file: source.name, byte: 0 },
-    remedy: `Use one of: ${FORMATS.map(({ name }) => name.toUpperCase()).join(', ')}`,
-  });
 }
 
-/** The fault of anything thrown while reading: ours as it is, a cancellation passed on, the rest as damage. */
-function faultOf(error: unknown, name: string, signal: AbortSignal | undefined): Fault {
-  if (signal?.aborted === true) throw error;
-  if (error instanceof BendbookError) return error.fault;
+/** The fault of anything thrown while reading: ours as it is, the rest as damage. */
+function faultOf(error: unknown, name: string): Fault {
+  if (error instanceof BendbookError) {
+    return { ...error.fault, place: { file: name, ...error.fault.place } };
+  }
   return {
     code: 'ingest/damaged',
     cause: `The file is damaged: ${error instanceof Error ? error.message : String(error)}`,
@@ -59,19 +122,15 @@ function faultOf(error: unknown, name: string, signal: AbortSignal | undefined):
  * only when `options.signal` aborts.
  */
 export async function ingestFile(path: string, options: IngestOptions): Promise<IngestResult> {
-  const recordings: Recording[] = [];
-  const refused: { name: string; fault: Fault }[] = [];
-  const context: ReadContext = {
-    columns: options.columns ?? {},
-    maxFixes: options.maxFixes ?? DEFAULT_MAX_FIXES,
-  };
+  const { name, signal, columns = {}, maxFixes = DEFAULT_MAX_FIXES } = options;
+  const ingestion = new Ingestion({ columns, maxFixes }, signal);
   try {
-    const source = await fileSource(path, options.name, options.signal, options.onProgress?.bind(options));
-    recordings.push(await readOne(source, context));
+    const source = await fileSource(path, name, signal, options.onProgress?.bind(options));
+    await ingestion.take(source, path, 0);
   } catch (error) {
-    refused.push({ name: options.name, fault: faultOf(error, options.name, options.signal) });
+    ingestion.refuse(name, error);
   }
-  return { recordings, refused };
+  return { recordings: ingestion.recordings, refused: ingestion.refused };
 }
 
 const PREVIEW_ROWS = 20;
