@@ -1,6 +1,6 @@
 import { existsSync, readFileSync } from 'node:fs';
 import { writeFile } from 'node:fs/promises';
-import { basename } from 'node:path';
+import { basename, join, parse } from 'node:path';
 import { Readable } from 'node:stream';
 import { parseArgs } from 'node:util';
 import { parseLimitSet, parseVehicle } from '../shared/limits/index.ts';
@@ -12,8 +12,7 @@ import type { Mode } from '../shared/schema/common.ts';
 import type { CantRule, Setup } from '../shared/schema/setup.ts';
 import { profileTable, reportContext, type AssessableRun } from './assessment.ts';
 import { BUILT_IN, DEFAULT_SETUP } from './catalogue.ts';
-import { SERVE_USAGE, wrongArguments } from './configuration.ts';
-import { main as serveMain } from './main.ts';
+import { readConfiguration, SERVE_USAGE, wrongArguments } from './configuration.ts';
 import { analyseFile } from './pipeline.ts';
 import {
   curveTableCsv,
@@ -24,6 +23,7 @@ import {
   reportPdf,
   type ReportContext,
 } from './report/index.ts';
+import { serveUntilStopped } from './serve.ts';
 import { fingerprint } from './store/raw-files.ts';
 
 const USAGE = `bendbook assess RECORDING... [options]
@@ -37,7 +37,7 @@ bendbook serve [options]
   --tier normal|exceptional
   --format csv|json|geojson|xlsx|pdf   (default csv)
   --out FILE             where the table goes (default: standard output)
-  --profile FILE         also write the resampled run as CSV (one recording with one run)
+  --profile FILE         also write the resampled run as CSV; several runs: FILE with -1, -2, ... before its ending
   --spacing METRES       step of the profile (default 5)
   --column FIELD=HEADER[:UNIT]   name a column of a delimited file by hand; may be repeated
 
@@ -64,19 +64,20 @@ export async function runCli(args: readonly string[]): Promise<number> {
   const [command, ...rest] = args;
   try {
     if (command === undefined || command === 'help' || args.includes('--help') || args.includes('-h')) {
-      console.log(USAGE);
+      if (command === undefined) console.error(USAGE);
+      else console.log(USAGE);
       return command === undefined ? 2 : 0;
     }
     if (command === 'serve') {
-      await serveMain(rest);
+      await serveUntilStopped(readConfiguration(rest, process.env));
       return 0;
     }
     if (command === 'assess') return await assess(readArguments(rest));
     throw wrongArguments(`there is no command "${command}"`);
   } catch (error) {
-    if (!(error instanceof BendbookError)) throw error;
-    complain(error.fault);
-    return 2;
+    complain(error instanceof BendbookError ? error.fault : faultOf(error, null));
+    // Sets and registers named in the arguments count as arguments: what is wrong in them is found before any work.
+    return error instanceof BendbookError && !/^(output|serve|store)\//.test(error.fault.code) ? 2 : 1;
   }
 }
 
@@ -97,7 +98,7 @@ async function assess(args: Arguments): Promise<number> {
   const title = args.recordings.map((path) => basename(path)).join(', ');
   const context = reportContext(title, runs, args.setup);
   await output(args.out, await tableOf(context, args, runs));
-  if (args.profile !== null) await writeProfile(args.profile, runs, args, context);
+  if (args.profile !== null) await writeProfiles(args.profile, runs, args.setup, context.cautions[0] ?? '');
   return refused > 0 ? 1 : 0;
 }
 
@@ -109,7 +110,9 @@ async function readRecording(path: string, args: Arguments): Promise<{ runs: Ass
       remedy: 'Check the path',
     });
   }
-  const name = basename(path);
+  // Files of one name from several folders are told apart by their folders.
+  const alike = args.recordings.filter((other) => basename(other) === basename(path)).length > 1;
+  const name = alike ? path : basename(path);
   const { bytes, sha256 } = await fingerprint(path);
   const analysis = await analyseFile(path, { name, columns: args.columns, spacingM: args.spacingM });
   const runs: AssessableRun[] = [];
@@ -166,29 +169,49 @@ async function tableOf(
   }
 }
 
-async function writeProfile(
+/** One file for one run; several runs are numbered in the order of the table. */
+async function writeProfiles(
   path: string,
   runs: readonly AssessableRun[],
-  { setup }: Arguments,
-  context: ReportContext,
+  setup: Setup,
+  caution: string,
 ): Promise<void> {
-  if (runs.length > 1) {
-    throw wrongArguments(`--profile writes one run, and there are ${String(runs.length)}; assess them one by one`);
+  const { dir, name, ext } = parse(path);
+  for (const [i, run] of runs.entries()) {
+    const target = runs.length === 1 ? path : join(dir, `${name}-${String(i + 1)}${ext}`);
+    await write(target, Readable.from(profileCsv(profileTable(run, setup), caution)));
   }
-  await writeFile(path, Readable.from(profileCsv(profileTable(runs[0]!, setup), context.cautions[0] ?? '')));
 }
 
 async function output(path: string | null, content: string | Buffer): Promise<void> {
   if (path !== null) {
-    await writeFile(path, content);
+    await write(path, content);
     return;
   }
   await new Promise<void>((resolve, reject) => {
-    process.stdout.write(content, (error) => {
-      if (error) reject(error);
-      else resolve();
+    // A reader that has seen enough (head) closes the pipe: not a failure of ours.
+    process.stdout.on('error', (error: NodeJS.ErrnoException) => {
+      if (error.code === 'EPIPE') resolve();
+      else reject(error);
     });
+    process.stdout.write(content, () => resolve());
   });
+}
+
+async function write(path: string, content: string | Buffer | Readable): Promise<void> {
+  try {
+    await writeFile(path, content);
+  } catch (error) {
+    throw new BendbookError(
+      'output/not-written',
+      {
+        cause: `this file cannot be written: ${error instanceof Error ? error.message : String(error)}`,
+        place: { file: path },
+        remedy: 'Check the folder, its rights and the room on the disk',
+      },
+      { cause: error },
+    );
+  }
 }
 
 function readArguments(args: readonly string[]): Arguments {
@@ -288,7 +311,7 @@ function readRegister(path: string): CantRegister {
 }
 
 function columnName(text: string): [string, { header: string; unit?: string }] {
-  const match = /^([^=]+)=(.+?)(?::([^:]+))?$/.exec(text);
+  const match = /^([^=]+)=(.+?)(?::([^:\s]+))?$/.exec(text);
   if (match === null) throw wrongArguments(`--column takes FIELD=HEADER or FIELD=HEADER:UNIT, not "${text}"`);
   const [, field = '', header = '', unit] = match;
   return [field, unit === undefined ? { header } : { header, unit }];
@@ -306,13 +329,14 @@ function number(text: string, option: string, least: number, most: number): numb
   throw wrongArguments(`${option} takes a number from ${String(least)} to ${String(most)}, not "${text}"`);
 }
 
-function faultOf(error: unknown, path: string): Fault {
-  if (error instanceof BendbookError) return { ...error.fault, place: { file: basename(path), ...error.fault.place } };
+function faultOf(error: unknown, path: string | null): Fault {
+  const place = path === null ? {} : { file: path };
+  if (error instanceof BendbookError) return { ...error.fault, place: { ...place, ...error.fault.place } };
   return {
     code: 'cli/failed',
     cause: error instanceof Error ? error.message : String(error),
-    place: { file: path },
-    remedy: 'Check that the file can be read',
+    place,
+    remedy: path === null ? '"bendbook --help" shows the arguments' : 'Check that the file can be read',
   };
 }
 

@@ -54,7 +54,7 @@ export interface Analysis {
 }
 
 /** Shares of the whole work at which the stages end, from measured times of a long log. */
-const ENDS = { ingest: 0.3, clean: 0.35, estimate: 0.65, alignment: 1 } as const;
+const ENDS = { ingest: 0.3, clean: 0.35, estimate: 0.75, alignment: 1 } as const;
 const DEFAULT_SPACING_M = 5;
 
 /**
@@ -84,9 +84,10 @@ export async function analyseFile(path: string, options: AnalyseOptions): Promis
   const recordings: AnalysedRecording[] = [];
   let curvesFound = 0;
   for (const [k, recording] of ingested.recordings.entries()) {
-    const share = (within: number) => ENDS.ingest + ((k + within) / ingested.recordings.length) * (1 - ENDS.ingest);
-    const report = (stage: Progress['stage'], within: number) =>
-      onProgress?.({ stage, share: share(within), bytesRead, curvesFound });
+    const report = (stage: Progress['stage'], within: number) => {
+      const share = ENDS.ingest + ((k + within) / ingested.recordings.length) * (1 - ENDS.ingest);
+      onProgress?.({ stage, share, bytesRead, curvesFound });
+    };
     report('clean', 0);
     const cleaned = cleanRecording(recording);
     const runs: AnalysedRun[] = [];
@@ -94,8 +95,12 @@ export async function analyseFile(path: string, options: AnalyseOptions): Promis
       signal?.throwIfAborted();
       const part = (within: number) => (r + within) / cleaned.runs.length;
       report('estimate', part(0));
-      const analysed = analyseRun(run, r + 1, options.spacingM ?? DEFAULT_SPACING_M, (stage, within) => {
-        report(stage, part(within));
+      const analysed = analyseRun(run, r + 1, {
+        spacingM: options.spacingM ?? DEFAULT_SPACING_M,
+        ...(signal === undefined ? {} : { signal }),
+        report(stage, within) {
+          report(stage, part(within));
+        },
       });
       curvesFound += analysed.alignment.curves.length;
       runs.push(analysed);
@@ -111,16 +116,23 @@ export async function analyseFile(path: string, options: AnalyseOptions): Promis
   return { recordings, refused: ingested.refused };
 }
 
+interface RunOptions {
+  readonly spacingM: number;
+  readonly signal?: AbortSignal;
+  /** `within`: share of this run's own work, 0..1. */
+  report(stage: Progress['stage'], within: number): void;
+}
+
 /** Run -> motion -> alignment -> passages and profile. */
-export function analyseRun(
-  run: Run,
-  number: number,
-  spacingM: number,
-  report: (stage: Progress['stage'], share: number) => void = () => undefined,
-): AnalysedRun {
-  report('estimate', 0);
-  const estimated = estimateMotion(run);
-  report('alignment', 0.5);
+function analyseRun(run: Run, number: number, { spacingM, signal, report }: RunOptions): AnalysedRun {
+  const estimateShare = (ENDS.estimate - ENDS.clean) / (ENDS.alignment - ENDS.clean);
+  const estimated = estimateMotion(run, {
+    ...(signal === undefined ? {} : { signal }),
+    onProgress(share) {
+      report('estimate', share * estimateShare);
+    },
+  });
+  report('alignment', estimateShare);
   const fitted = fitAlignment(run, estimated.motion);
   const { motion, alignment } = fitted;
   let topSpeedMps = 0;

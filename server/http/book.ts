@@ -23,7 +23,7 @@ export class Book {
 
   async documents(): Promise<Documents> {
     const own = async <T>(kind: 'limit-set' | 'vehicle' | 'register', parse: (body: unknown) => T) =>
-      (await this.#store.documents(kind)).map(parse);
+      (await this.#store.documents.list(kind)).map(parse);
     return {
       limitSets: [...BUILT_IN.limitSets, ...(await own('limit-set', (body) => LimitSet.parse(body)))],
       vehicles: [...BUILT_IN.vehicles, ...(await own('vehicle', (body) => Vehicle.parse(body)))],
@@ -33,32 +33,40 @@ export class Book {
 
   /** The setup that a new recording gets: the last one chosen for the mode in use. */
   async defaultSetup(): Promise<SetupRef> {
-    const mode = (await this.#store.setting('mode')) === 'road' ? 'road' : 'rail';
+    const mode = (await this.#store.documents.setting('mode')) === 'road' ? 'road' : 'rail';
     return await this.#setupOfMode(mode);
   }
 
   async #setupOfMode(mode: Mode): Promise<SetupRef> {
-    const kept = SetupRef.safeParse(await this.#store.setting(`setup:${mode}`));
+    const kept = SetupRef.safeParse(await this.#store.documents.setting(`setup:${mode}`));
     return kept.success ? kept.data : DEFAULT_SETUP[mode];
   }
 
-  /** The setup in effect for a recording: its own, else the default of its mode. */
+  /** The setup in effect for a recording: its own, else the one kept for its mode. */
   async setupOf(recordingId: string): Promise<SetupRef> {
-    const own = SetupRef.safeParse(await this.#store.setting(`setup:${recordingId}`));
+    const { setup, mode } = await this.#store.recordingSetup(recordingId);
+    const own = SetupRef.safeParse(setup);
     if (own.success) return await this.#withKnownIds(own.data);
-    return await this.#withKnownIds(await this.defaultSetup());
+    return await this.#withKnownIds(mode === null ? await this.defaultSetup() : await this.#setupOfMode(mode));
   }
 
-  /** Keeps a setup for a recording (all its runs), or as the default when no recording is named. A register belongs to its line. */
+  /**
+   * Keeps a setup: for one recording (all its runs), or for all of its mode. The latter replaces what
+   * single recordings of that mode had, so that the change shows wherever the user looks.
+   */
   async putSetup(ref: SetupRef, recordingId: string | null): Promise<void> {
     resolveSetup(ref, await this.documents());
-    this.#tables.clear();
+    this.forgetTables();
     if (recordingId !== null) {
-      await this.#store.putSetting(`setup:${recordingId}`, ref);
+      await this.#store.setRecordingSetup(recordingId, ref);
       return;
     }
-    await this.#store.putSetting('mode', ref.mode);
-    await this.#store.putSetting(`setup:${ref.mode}`, ref);
+    await this.#store.documents.putSetting('mode', ref.mode);
+    await this.#store.documents.putSetting(`setup:${ref.mode}`, ref);
+    for (const { id } of await this.#store.recordings()) {
+      const own = SetupRef.safeParse((await this.#store.recordingSetup(id)).setup);
+      if (own.success && own.data.mode === ref.mode) await this.#store.setRecordingSetup(id, null);
+    }
   }
 
   /** A set, vehicle or register that was deleted since is replaced by what a new user gets. */

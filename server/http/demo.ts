@@ -1,4 +1,4 @@
-import { copyFile, readFile, stat } from 'node:fs/promises';
+import { copyFile, readFile } from 'node:fs/promises';
 import { join } from 'node:path';
 import { randomUUID } from 'node:crypto';
 import { z } from 'zod';
@@ -30,10 +30,10 @@ export async function loadDemo(store: Store, queue: JobQueue, book: Book): Promi
   const manifest = DemoManifest.parse(JSON.parse(await readFile(join(folder, 'demo.json'), 'utf8')));
   const text = await readFile(join(folder, manifest.register.file), 'utf8');
   const { register } = parseCantRegister(text, { id: REGISTER_ID, name: manifest.register.name });
-  await store.putDocument('register', REGISTER_ID, register);
+  await store.documents.put('register', REGISTER_ID, register);
   const present = (await store.recordings()).filter(({ demo }) => demo);
   const loaded: RecordingSummary[] = [];
-  for (const { file, mode } of manifest.recordings) {
+  for (const { file, mode, title } of manifest.recordings) {
     const there = present.find(({ name }) => name === file);
     if (there !== undefined) {
       loaded.push(there);
@@ -41,17 +41,18 @@ export async function loadDemo(store: Store, queue: JobQueue, book: Book): Promi
     }
     const id = randomUUID();
     const temporary = incomingPath(store);
-    await stat(join(folder, file));
     await copyFile(join(folder, file), temporary);
     const { bytes, sha256 } = await fingerprint(temporary);
     await store.addRecording(temporary, {
       id,
       name: file,
+      title,
       bytes,
       sha256,
       uploadedUtcS: Date.now() / 1000,
       demo: true,
       mode,
+      columns: {},
     });
     await book.putSetup({ ...DEFAULT_SETUP[mode], registerId: mode === 'rail' ? REGISTER_ID : null }, id);
     await queue.add(id);

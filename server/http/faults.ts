@@ -1,18 +1,24 @@
-import type { ErrorRequestHandler, Response } from 'express';
+import type { ErrorRequestHandler } from 'express';
 import multer from 'multer';
 import { ZodError } from 'zod';
 import { BendbookError, type Fault } from '../../shared/model/fault.ts';
+import { diskFull, isDiskFull } from '../store/disk.ts';
 
-/** Status by the first part of a fault's code where it is not 422 (the request was understood, its content cannot be used). */
+/** Status by code of the fault; any other is 422: the request was understood, its content cannot be used. */
 const STATUS: Readonly<Record<string, number>> = {
   'http/not-found': 404,
   'http/bad-request': 400,
+  'http/too-large': 413,
   'http/built-in': 409,
+  'http/foreign': 403,
+  'http/too-many-requests': 429,
+  'http/internal': 500,
   'upload/too-large': 413,
   'upload/too-many': 413,
   'upload/cut-off': 400,
   'store/disk-full': 507,
-  'http/internal': 500,
+  'store/damaged': 500,
+  'store/result-missing': 404,
 };
 
 export function notFound(what: string): BendbookError {
@@ -25,41 +31,25 @@ export function notFound(what: string): BendbookError {
 /** Every failure leaves as `{ fault }` with cause and remedy; what the user cannot mend is logged for the one who runs the server. */
 export function faultHandler(maxUploadBytes: number, log: (error: unknown) => void): ErrorRequestHandler {
   return (error: unknown, _request, response, next) => {
-    if (response.headersSent) {
-      next(error);
-      return;
-    }
     const fault = faultOf(error, maxUploadBytes);
-    if (fault.code === 'http/internal') log(error);
-    sendFault(response, fault);
+    const status = STATUS[fault.code] ?? 422;
+    if (status === 500) log(error);
+    // A download that broke half way can only be cut off.
+    if (response.headersSent) next(error);
+    else response.status(status).json({ fault });
   };
 }
 
-export function sendFault(response: Response, fault: Fault): void {
-  response.status(STATUS[fault.code] ?? 422).json({ fault });
-}
-
 function faultOf(error: unknown, maxUploadBytes: number): Fault {
+  if (isDiskFull(error)) return diskFull('the disk is full').fault;
   if (error instanceof BendbookError) return error.fault;
   if (error instanceof multer.MulterError) return uploadFault(error, maxUploadBytes);
   if (error instanceof ZodError) {
-    return {
-      code: 'http/bad-request',
-      cause: error.issues.map(({ path, message }) => `${path.join('.') || 'body'}: ${message}`).join('; '),
-      place: {},
-      remedy: 'Correct the fields named; /api/openapi.json describes the request',
-    };
+    return badRequest(error.issues.map(({ path, message }) => `${path.join('.') || 'body'}: ${message}`).join('; '));
   }
-  const { code, type, status } = error as { code?: string; type?: string; status?: number };
-  if (code === 'ENOSPC') {
-    return {
-      code: 'store/disk-full',
-      cause: 'the disk is full',
-      place: {},
-      remedy: 'Free some space in the data folder and try again',
-    };
-  }
-  if (code === 'ECONNRESET' || code === 'ECONNABORTED' || /Unexpected end of form|aborted/i.test(String(error))) {
+  const { code, status } = error as { code?: string; status?: number };
+  const message = error instanceof Error ? error.message : String(error);
+  if (code === 'ECONNRESET' || code === 'ECONNABORTED' || /unexpected end of form|aborted/i.test(message)) {
     return {
       code: 'upload/cut-off',
       cause: 'the upload ended half way',
@@ -67,14 +57,20 @@ function faultOf(error: unknown, maxUploadBytes: number): Fault {
       remedy: 'Send the file again; nothing of it was kept',
     };
   }
-  if (type?.startsWith('entity.') === true || (status !== undefined && status >= 400 && status < 500)) {
+  if (/malformed part header|boundary not found|multipart/i.test(message)) return badRequest(message);
+  if (/database disk image is malformed|file is not a database/i.test(message)) {
     return {
-      code: 'http/bad-request',
-      cause: error instanceof Error ? error.message : String(error),
+      code: 'store/damaged',
+      cause: `the database is damaged: ${message}`,
       place: {},
-      remedy: '/api/openapi.json describes the request',
+      remedy: 'Stop the server and start it with --recover; the uploaded recordings are safe',
     };
   }
+  if (status === 404) return notFound('This address').fault;
+  if (status === 413) {
+    return { ...badRequest(message), code: 'http/too-large', remedy: 'Send less at once' };
+  }
+  if (status !== undefined && status >= 400 && status < 500) return badRequest(message);
   return {
     code: 'http/internal',
     cause: 'the server could not do this',
@@ -83,28 +79,28 @@ function faultOf(error: unknown, maxUploadBytes: number): Fault {
   };
 }
 
-function uploadFault(error: multer.MulterError, maxUploadBytes: number): Fault {
-  const file = error.field ?? '';
-  if (error.code === 'LIMIT_FILE_SIZE') {
-    return {
-      code: 'upload/too-large',
-      cause: `the file is larger than ${String(Math.round(maxUploadBytes / 1e6))} MB`,
-      place: {},
-      remedy: 'Split the recording, compress it (zip or gzip), or start the server with a higher --max-upload-mb',
-    };
+function badRequest(cause: string): Fault {
+  return { code: 'http/bad-request', cause, place: {}, remedy: '/api/openapi.json describes the request' };
+}
+
+function uploadFault({ code, message, field }: multer.MulterError, maxUploadBytes: number): Fault {
+  switch (code) {
+    case 'LIMIT_FILE_SIZE':
+      return {
+        code: 'upload/too-large',
+        cause: `the file is larger than ${String(Math.round(maxUploadBytes / 1e6))} MB; nothing of the upload was kept`,
+        place: {},
+        remedy: 'Split the recording, compress it (zip or gzip), or start the server with a higher --max-upload-mb',
+      };
+    case 'LIMIT_FILE_COUNT':
+    case 'LIMIT_PART_COUNT':
+      return {
+        code: 'upload/too-many',
+        cause: 'too many files in one upload',
+        place: {},
+        remedy: 'Send at most 200 at once',
+      };
+    default:
+      return { ...badRequest(`${message} ${field ?? ''}`.trim()), remedy: 'Send files in the field "file"' };
   }
-  if (error.code === 'LIMIT_FILE_COUNT' || error.code === 'LIMIT_PART_COUNT') {
-    return {
-      code: 'upload/too-many',
-      cause: 'too many files in one upload',
-      place: {},
-      remedy: 'Send at most 200 at once',
-    };
-  }
-  return {
-    code: 'http/bad-request',
-    cause: `${error.message} ${file}`.trim(),
-    place: {},
-    remedy: 'Send files in the field "file"',
-  };
 }

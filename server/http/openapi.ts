@@ -37,7 +37,7 @@ function documentPath(schema: z.ZodType): ZodOpenApiPathsObject[string] {
 }
 
 const PATHS: ZodOpenApiPathsObject = {
-  '/api/health': { get: { responses: json(z.object({ ok: z.boolean(), version: z.string() })) } },
+  '/api/health': { get: { responses: json(api.Health) } },
   '/api/events': {
     get: {
       responses: { 200: { description: 'Events job, recording, removed', content: { 'text/event-stream': {} } } },
@@ -127,7 +127,7 @@ const PATHS: ZodOpenApiPathsObject = {
       requestParams: { query: z.object({ name: z.string().optional() }) },
       requestBody: { content: { 'text/csv': { schema: z.string() } } },
       responses: {
-        201: { description: 'Read', content: { 'application/json': { schema: CantRegister } } },
+        201: { description: 'Read', content: { 'application/json': { schema: api.RegisterUpload } } },
         default: problem,
       },
     },

@@ -1,17 +1,18 @@
 import { createReadStream } from 'node:fs';
 import { Readable } from 'node:stream';
+import { pipeline } from 'node:stream/promises';
 import { randomUUID } from 'node:crypto';
 import express, { Router, type Request, type Response } from 'express';
 import { z } from 'zod';
 import { assessRun, parseCantRegister } from '../../shared/assess/index.ts';
 import { BendbookError } from '../../shared/model/fault.ts';
-import { ColumnNames } from '../../shared/schema/api.ts';
+import * as api from '../../shared/schema/api.ts';
 import { CantRegister } from '../../shared/schema/cant-register.ts';
 import { LimitSet } from '../../shared/schema/limit-set.ts';
 import { SetupRef } from '../../shared/schema/setup.ts';
 import { Vehicle } from '../../shared/schema/vehicle.ts';
 import { BUILT_IN } from '../catalogue.ts';
-import { previewFile } from '../ingest/preview.ts';
+import { previewFile } from '../ingest/index.ts';
 import type { JobQueue } from '../jobs/queue.ts';
 import { SOFTWARE } from '../package-root.ts';
 import {
@@ -23,7 +24,8 @@ import {
   reportHtml,
   reportPdf,
 } from '../report/index.ts';
-import type { DocumentKind, Store } from '../store/store.ts';
+import type { Store } from '../store/store.ts';
+import type { DocumentKind } from '../store/tables.ts';
 import type { Book } from './book.ts';
 import { loadDemo } from './demo.ts';
 import { streamEvents } from './events.ts';
@@ -44,80 +46,98 @@ export function apiRoutes(store: Store, queue: JobQueue, book: Book, maxUploadBy
   const routes = Router();
   const json = express.json({ limit: '2mb' });
   const receive = uploadReceiver(store, maxUploadBytes);
-  const reply = (response: Response, body: unknown, status = 200) => response.status(status).json(wire(body));
 
-  routes.get('/health', (_request, response) => void reply(response, { ok: true, version: SOFTWARE }));
+  routes.get('/health', (_request, response) => {
+    reply(response, api.Health, { ok: true, version: SOFTWARE });
+  });
   routes.get('/openapi.json', (_request, response) => void response.json(openApiDocument()));
   routes.get('/events', async (request, response) => {
     await streamEvents(request, response, queue);
   });
 
   // Recordings.
-  routes.get('/recordings', async (_request, response) => void reply(response, await store.recordings()));
+  routes.get('/recordings', async (_request, response) => {
+    reply(response, z.array(api.RecordingSummary), await store.recordings());
+  });
   routes.post('/recordings', async (request, response) => {
-    await new Promise<void>((resolve, reject) => {
-      receive(request, response, (error: unknown) => {
-        if (error === undefined || error === null) resolve();
-        else reject(error as Error);
-      });
-    });
+    await receive(request, response);
     try {
       const text = (request.body as { columns?: unknown } | undefined)?.columns;
-      const columns = typeof text === 'string' && text !== '' ? ColumnNames.parse(parseJson(text)) : null;
-      reply(response, await keepUploads(request, columns, store, queue), 201);
+      const columns = typeof text === 'string' && text !== '' ? api.ColumnNames.parse(parseJson(text)) : {};
+      reply(response, api.UploadResult, await keepUploads(request, columns, store, queue), 201);
     } catch (error) {
       await dropUploads(request);
       throw error;
     }
   });
-  routes.get('/recordings/:id', async (request, response) => void reply(response, await recordingOf(request)));
+  routes.get('/recordings/:id', async (request, response) => {
+    reply(response, api.RecordingSummary, await recordingOf(request));
+  });
   routes.delete('/recordings/:id', async (request, response) => {
     const { id } = await recordingOf(request);
-    await queue.forget(id);
-    await store.removeRecording(id);
+    await queue.remove(id);
     book.forgetTables();
-    queue.emit('removed', { id });
     response.status(204).end();
   });
   routes.get('/recordings/:id/raw', async (request, response) => {
     const { id, name, bytes } = await recordingOf(request);
     response.attachment(plainName(name)).type('application/octet-stream').set('Content-Length', String(bytes));
-    createReadStream(store.raw.path(id)).pipe(response);
+    await sendStream(createReadStream(store.raw.path(id)), response);
   });
   routes.get('/recordings/:id/preview', async (request, response) => {
     const { id, name } = await recordingOf(request);
-    reply(response, await previewFile(store.raw.path(id), name));
+    const preview = await previewFile(store.raw.path(id), name, await store.columnNames(id));
+    if (preview === null) {
+      throw new BendbookError('http/no-columns', {
+        cause: 'this recording is not a delimited text: there are no columns to choose',
+        place: { file: name },
+        remedy: 'Nothing has to be chosen for it',
+      });
+    }
+    reply(response, api.ColumnPreview, preview);
   });
   routes.put('/recordings/:id/columns', json, async (request, response) => {
     const { id } = await recordingOf(request);
-    await store.setColumnNames(id, ColumnNames.parse(request.body));
-    reply(response, await queue.add(id));
+    await store.setColumnNames(id, api.ColumnNames.parse(request.body));
+    reply(response, api.Job, await queue.add(id));
   });
   routes.post('/recordings/:id/analyse', async (request, response) => {
     const { id } = await recordingOf(request);
-    reply(response, await queue.add(id));
+    reply(response, api.Job, await queue.add(id));
   });
   routes.post('/demo', async (_request, response) => {
-    reply(response, { recordings: await loadDemo(store, queue, book), refused: [] }, 201);
+    reply(response, api.UploadResult, { recordings: await loadDemo(store, queue, book), refused: [] }, 201);
   });
 
   // Jobs.
-  routes.get('/jobs', async (_request, response) => void reply(response, await queue.jobs()));
+  routes.get('/jobs', async (_request, response) => {
+    reply(response, z.array(api.Job), await queue.jobs());
+  });
   routes.get('/jobs/:id', async (request, response) => {
-    reply(response, (await queue.job(request.params.id)) ?? missing(`Job ${request.params.id}`));
+    reply(response, api.Job, (await queue.job(request.params.id)) ?? missing(`Job ${request.params.id}`));
   });
   routes.delete('/jobs/:id', async (request, response) => {
-    reply(response, (await queue.cancel(request.params.id)) ?? missing(`Job ${request.params.id}`));
+    reply(response, api.Job, (await queue.cancel(request.params.id)) ?? missing(`Job ${request.params.id}`));
   });
 
   // Runs.
-  routes.get('/runs', async (_request, response) => void reply(response, await store.runs()));
+  routes.get('/runs', async (_request, response) => {
+    reply(response, z.array(api.RunSummary), await store.runs());
+  });
   routes.get('/runs/:id', async (request, response) => {
     const run = await book.run(request.params.id);
     const { summary, quality, findings, alignment, passages } = run;
     const waypoints = await store.waypoints(summary.recordingId);
     const { ref } = await book.setupFor(run);
-    reply(response, { summary, quality, findings, elements: alignment.elements, passages, waypoints, setup: ref });
+    reply(response, api.RunDetail, {
+      summary,
+      quality,
+      findings,
+      elements: alignment.elements,
+      passages,
+      waypoints,
+      setup: ref,
+    });
   });
   routes.get('/runs/:id/profile', async (request, response) => {
     const { from, to, points } = WindowQuery.parse(request.query);
@@ -125,18 +145,21 @@ export function apiRoutes(store: Store, queue: JobQueue, book: Book, maxUploadBy
     const s = table.s_m ?? [];
     const fromM = Number.isFinite(from) ? from : (s[0] ?? 0);
     const toM = Number.isFinite(to) ? to : (s[s.length - 1] ?? 0);
-    // Already free of NaN; the general conversion would walk every number again.
-    response.json(profileWindow(table, fromM, toM, points));
+    reply(response, api.ProfileWindow, profileWindow(table, fromM, toM, points));
   });
   routes.get('/runs/:id/assessment', async (request, response) => {
     const run = await book.run(request.params.id);
     const { ref, setup } = await book.setupFor(run);
-    reply(response, { run: run.summary.id, setup: ref, ...assessRun(run.passages, setup) });
+    reply(response, api.AssessmentBody, { run: run.summary.id, setup: ref, ...assessRun(run.passages, setup) });
   });
   routes.post('/runs/:id/assessment', json, async (request, response) => {
     const run = await book.run(request.params.id);
     const ref = SetupRef.parse(request.body);
-    reply(response, { run: run.summary.id, setup: ref, ...assessRun(run.passages, await book.resolve(ref)) });
+    reply(response, api.AssessmentBody, {
+      run: run.summary.id,
+      setup: ref,
+      ...assessRun(run.passages, await book.resolve(ref)),
+    });
   });
 
   // Exports.
@@ -169,7 +192,7 @@ export function apiRoutes(store: Store, queue: JobQueue, book: Book, maxUploadBy
     const context = await book.report(request.params.id);
     const table = await book.table(request.params.id);
     response.attachment(`${exportName(context.title)}-profile.csv`).type('text/csv');
-    Readable.from(profileCsv(table, context.cautions[0] ?? '')).pipe(response);
+    await sendStream(Readable.from(profileCsv(table, context.cautions[0] ?? '')), response);
   });
   routes.get('/runs/:id/report.pdf', async (request, response) => {
     const context = await book.report(request.params.id);
@@ -195,7 +218,7 @@ export function apiRoutes(store: Store, queue: JobQueue, book: Book, maxUploadBy
       items: readonly T[],
       shipped: readonly { readonly id: string }[],
     ) => items.map((item) => ({ ...item, builtIn: shipped.some(({ id }) => id === item.id) }));
-    reply(response, {
+    reply(response, api.Catalogue, {
       limitSets: mark(limitSets, BUILT_IN.limitSets),
       vehicles: mark(vehicles, BUILT_IN.vehicles),
       registers,
@@ -206,7 +229,7 @@ export function apiRoutes(store: Store, queue: JobQueue, book: Book, maxUploadBy
     const ref = SetupRef.parse(request.body);
     const runId = typeof request.query.run === 'string' ? request.query.run : null;
     await book.putSetup(ref, runId === null ? null : (await book.run(runId)).summary.recordingId);
-    reply(response, ref);
+    reply(response, SetupRef, ref);
   });
   documentRoutes('limit-sets', 'limit-set', LimitSet, BUILT_IN.limitSets);
   documentRoutes('vehicles', 'vehicle', Vehicle, BUILT_IN.vehicles);
@@ -218,8 +241,8 @@ export function apiRoutes(store: Store, queue: JobQueue, book: Book, maxUploadBy
       id,
       name,
     });
-    await store.putDocument('register', id, register);
-    reply(response, { ...register, findings }, 201);
+    await store.documents.put('register', id, register);
+    reply(response, api.RegisterUpload, { ...register, findings }, 201);
   });
 
   routes.use((request) => {
@@ -255,17 +278,33 @@ export function apiRoutes(store: Store, queue: JobQueue, book: Book, maxUploadBy
           remedy: 'Use one id in both',
         });
       }
-      await store.putDocument(kind, id, body);
+      await store.documents.put(kind, id, body);
       book.forgetTables();
-      reply(response, body);
+      reply(response, schema, body);
     });
     routes.delete(`/${path}/:id`, async (request, response) => {
       const id = String(request.params.id);
       own(id);
-      if (!(await store.removeDocument(kind, id))) throw notFound(id);
+      if (!(await store.documents.remove(kind, id))) throw notFound(id);
       book.forgetTables();
       response.status(204).end();
     });
+  }
+}
+
+/** Sends a body that was checked against its schema: what the page relies on is what it gets. */
+function reply<T extends z.ZodType>(response: Response, schema: T, body: unknown, status = 200): void {
+  const checked = schema.safeParse(wire(body));
+  if (!checked.success) throw new Error(`the answer does not fit its schema: ${checked.error.message}`);
+  response.status(status).json(checked.data);
+}
+
+/** Sends a stream; a client that goes away ends it without a fuss. */
+async function sendStream(stream: Readable, response: Response): Promise<void> {
+  try {
+    await pipeline(stream, response);
+  } catch (error) {
+    if ((error as { code?: string }).code !== 'ERR_STREAM_PREMATURE_CLOSE') throw error;
   }
 }
 

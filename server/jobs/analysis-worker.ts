@@ -1,38 +1,42 @@
-import { parentPort, workerData } from 'node:worker_threads';
+import { move, transferableSymbol, valueSymbol } from 'piscina';
 import { BendbookError } from '../../shared/model/fault.ts';
-import { analyseFile, type Analysis } from '../pipeline.ts';
+import { analyseFile, type Analysis, type Progress } from '../pipeline.ts';
 import type { AnalysisAnswer, AnalysisOrder } from './messages.ts';
 
-/** Progress is told at most this often, ms. */
+/** Progress is told at most this often, ms; a new stage is told at once. */
 const TELL_EVERY_MS = 150;
 
-const port = parentPort;
-if (port === null) throw new Error('this file runs as a worker thread');
-const order = workerData as AnalysisOrder;
-let told = 0;
-
-try {
-  const analysis = await analyseFile(order.path, {
-    name: order.name,
-    columns: order.columns,
-    onProgress(progress) {
-      const now = performance.now();
-      if (now - told < TELL_EVERY_MS) return;
-      told = now;
-      answer({ kind: 'progress', progress });
-    },
-  });
-  answer({ kind: 'done', analysis }, columnBuffers(analysis));
-} catch (error) {
-  if (error instanceof BendbookError) answer({ kind: 'fault', fault: error.fault });
-  else throw error;
+/** Analyses one file in a thread of the pool. */
+export default async function analyse({ path, name, columns, port }: AnalysisOrder): Promise<unknown> {
+  let told = 0;
+  let stage: Progress['stage'] | null = null;
+  try {
+    const analysis = await analyseFile(path, {
+      name,
+      columns,
+      onProgress(progress) {
+        const now = performance.now();
+        if (progress.stage === stage && now - told < TELL_EVERY_MS) return;
+        told = now;
+        stage = progress.stage;
+        port.postMessage(progress);
+      },
+    });
+    return handOver({ analysis }, columnBuffers(analysis));
+  } catch (error) {
+    if (!(error instanceof BendbookError)) throw error;
+    return { fault: error.fault } satisfies AnalysisAnswer;
+  } finally {
+    port.close();
+  }
 }
 
-function answer(message: AnalysisAnswer, transfer: ArrayBuffer[] = []): void {
-  port!.postMessage(message, transfer);
+/** The answer with buffers that change hands instead of being copied. */
+function handOver(answer: AnalysisAnswer, buffers: ArrayBuffer[]): unknown {
+  return move({ [transferableSymbol]: buffers, [valueSymbol]: answer } as unknown as Parameters<typeof move>[0]);
 }
 
-/** The columns of all profiles: handed over, not copied. */
+/** The columns of all profiles. */
 function columnBuffers(analysis: Analysis): ArrayBuffer[] {
   const buffers = new Set<ArrayBuffer>();
   for (const { runs } of analysis.recordings) {

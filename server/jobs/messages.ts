@@ -1,16 +1,16 @@
+import type { MessagePort } from 'node:worker_threads';
 import type { Fault } from '../../shared/model/fault.ts';
-import type { Analysis, Progress } from '../pipeline.ts';
 import type { ColumnNames } from '../../shared/schema/api.ts';
+import type { Analysis } from '../pipeline.ts';
 
 /** What an analysis thread is given. */
 export interface AnalysisOrder {
   readonly path: string;
   readonly name: string;
   readonly columns: ColumnNames;
+  /** Where progress is told (`Progress` of the pipeline). */
+  readonly port: MessagePort;
 }
 
-/** What it answers: progress any number of times, then one result or one fault. */
-export type AnalysisAnswer =
-  | { readonly kind: 'progress'; readonly progress: Progress }
-  | { readonly kind: 'done'; readonly analysis: Analysis }
-  | { readonly kind: 'fault'; readonly fault: Fault };
+/** What it answers. */
+export type AnalysisAnswer = { readonly analysis: Analysis } | { readonly fault: Fault };

@@ -1,12 +1,15 @@
 import { randomUUID } from 'node:crypto';
 import { EventEmitter } from 'node:events';
 import { existsSync } from 'node:fs';
-import { availableParallelism } from 'node:os';
+import { availableParallelism, totalmem } from 'node:os';
 import { fileURLToPath } from 'node:url';
-import { Worker } from 'node:worker_threads';
-import { BendbookError, type Fault } from '../../shared/model/fault.ts';
+import { MessageChannel } from 'node:worker_threads';
+import { Piscina } from 'piscina';
+import type { Fault } from '../../shared/model/fault.ts';
 import type { Job, RecordingSummary } from '../../shared/schema/api.ts';
+import type { Analysis, Progress } from '../pipeline.ts';
 import type { Store } from '../store/store.ts';
+import { CANCELLED, crashFault, interruptedFault, storeFault } from './job-faults.ts';
 import type { AnalysisAnswer, AnalysisOrder } from './messages.ts';
 import { resultsOf } from './results.ts';
 
@@ -18,40 +21,73 @@ interface QueueEvents {
 
 interface RunningJob {
   readonly job: Job;
-  readonly worker: Worker;
-  cancelled: boolean;
+  readonly abort: AbortController;
+  /** Fulfilled when the outcome is stored. */
+  settled: Promise<void>;
 }
 
-/** Megabytes of JavaScript heap a thread may use; columns lie outside the heap and are bounded by the count of fixes. */
-const HEAP_MB = 4096;
+export interface JobQueueOptions {
+  /** Analyses at once; by default one less than there are processors, at least one. */
+  readonly threads?: number;
+  /** JavaScript file that the threads run. */
+  readonly workerFile?: string;
+  /** Told of what went wrong inside; nobody waits for it. */
+  onTrouble?(error: unknown): void;
+}
+
+/** JavaScript heap of a thread, MB, at most; columns lie outside the heap and are bounded by the count of fixes. */
+const MOST_HEAP_MB = 4096;
+/** A thread without work ends after this time and gives its memory back, ms. */
+const IDLE_MS = 20_000;
+/** Begun this often and never ended, a job is given up: it may be what ends the server. */
+const MOST_ATTEMPTS = 5;
+/** When the table cannot be read or written (disk full), the queue tries again after this time, ms. */
+const RETRY_MS = 5000;
 
 /**
- * Analyses of uploaded recordings, one worker thread each, at most one less than there are processors.
- * The queue is a table: what a killed server left running is done again at the next start.
+ * Analyses of uploaded recordings in worker threads. The queue is a table: what a killed server left
+ * running is done again at the next start. The database is locked by one server, so no job has two workers.
  */
 export class JobQueue extends EventEmitter<QueueEvents> {
   readonly #store: Store;
-  readonly #most: number;
+  readonly #threads: number;
+  readonly #pool: Piscina;
+  readonly #onTrouble: (error: unknown) => void;
   readonly #running = new Map<string, RunningJob>();
   #closing = false;
   #pumping = false;
+  #pumpAgain = false;
 
-  constructor(store: Store, most = Math.max(1, availableParallelism() - 1)) {
+  constructor(store: Store, options: JobQueueOptions = {}) {
     super();
     this.setMaxListeners(0);
     this.#store = store;
-    this.#most = most;
+    this.#threads = options.threads ?? Math.max(1, availableParallelism() - 1);
+    this.#onTrouble = options.onTrouble?.bind(options) ?? (() => undefined);
+    this.#pool = new Piscina({
+      filename: options.workerFile ?? workerFile(),
+      minThreads: 0,
+      maxThreads: this.#threads,
+      idleTimeout: IDLE_MS,
+      resourceLimits: { maxOldGenerationSizeMb: Math.min(MOST_HEAP_MB, Math.round(totalmem() / 2 ** 21)) },
+    });
   }
 
   /** Takes up what was left: interrupted jobs first in line, recordings without a job after them. */
   async start(): Promise<void> {
-    for (const recordingId of await this.#store.requeueInterrupted()) await this.add(recordingId);
+    const { givenUp, idle } = await this.#store.jobs.requeueInterrupted(MOST_ATTEMPTS);
+    for (const job of givenUp) {
+      const name = (await this.#store.recording(job.recordingId))?.name ?? '';
+      await this.#finish(job, 'failed', interruptedFault(name, MOST_ATTEMPTS));
+    }
+    for (const recordingId of idle) await this.add(recordingId);
     void this.#pump();
   }
 
-  /** Queues the analysis of a recording. */
+  /** Queues the analysis of a recording; one that is under way for it already is stopped. */
   async add(recordingId: string): Promise<Job> {
-    const job = await this.#store.addJob(randomUUID(), recordingId, Date.now() / 1000);
+    await this.#stopAll(recordingId);
+    const job = await this.#store.jobs.add(randomUUID(), recordingId, Date.now() / 1000);
     await this.#store.setRecordingState(recordingId, 'waiting', null);
     this.emit('job', job);
     await this.#tellRecording(recordingId);
@@ -61,133 +97,163 @@ export class JobQueue extends EventEmitter<QueueEvents> {
 
   /** The job as it stands, progress of a running one included. */
   async job(id: string): Promise<Job | null> {
-    return this.#running.get(id)?.job ?? (await this.#store.job(id));
+    return this.#running.get(id)?.job ?? (await this.#store.jobs.find(id));
   }
 
   async jobs(): Promise<Job[]> {
-    return (await this.#store.jobs()).map((job) => this.#running.get(job.id)?.job ?? job);
+    return (await this.#store.jobs.list()).map((job) => this.#running.get(job.id)?.job ?? job);
   }
 
-  /** Stops a job: a running thread is ended at once, a queued one never starts. */
+  /** Stops a job: the thread of a running one is ended at once, a queued one never starts. */
   async cancel(id: string): Promise<Job | null> {
     const running = this.#running.get(id);
     if (running !== undefined) {
-      running.cancelled = true;
-      await running.worker.terminate();
+      running.abort.abort();
+      await running.settled;
     } else {
-      const job = await this.#store.job(id);
+      const job = await this.#store.jobs.find(id);
       if (job?.state === 'queued') await this.#finish(job, 'cancelled', CANCELLED);
     }
     return await this.job(id);
   }
 
-  /** Ends the jobs of a recording that is about to be deleted. */
-  async forget(recordingId: string): Promise<void> {
-    for (const [id, { job }] of this.#running) if (job.recordingId === recordingId) await this.cancel(id);
+  /** Ends the jobs of a recording that is about to be deleted, deletes it and tells so. */
+  async remove(recordingId: string): Promise<void> {
+    await this.#stopAll(recordingId);
+    await this.#store.removeRecording(recordingId);
+    this.emit('removed', { id: recordingId });
   }
 
+  /** Ends all threads; running jobs stay in the table and are done again at the next start. */
   async close(): Promise<void> {
     this.#closing = true;
-    await Promise.all([...this.#running.values()].map(({ worker }) => worker.terminate()));
+    await this.#pool.destroy();
+    await Promise.all([...this.#running.values()].map(({ settled }) => settled));
   }
 
+  async #stopAll(recordingId: string): Promise<void> {
+    for (const { id } of await this.#store.jobs.unfinishedOf(recordingId)) await this.cancel(id);
+  }
+
+  /** Begins queued jobs while threads are free. */
   async #pump(): Promise<void> {
+    this.#pumpAgain = true;
     if (this.#pumping) return;
     this.#pumping = true;
     try {
-      while (!this.#closing && this.#running.size < this.#most) {
-        const job = await this.#store.nextQueuedJob();
-        if (job === null) break;
-        await this.#begin(job);
+      while (this.#pumpAgain) {
+        this.#pumpAgain = false;
+        while (!this.#closing && this.#running.size < this.#threads) {
+          const job = await this.#store.jobs.nextQueued();
+          if (job === null) break;
+          await this.#begin(job);
+        }
       }
+    } catch (error) {
+      this.#onTrouble(error);
+      setTimeout(() => void this.#pump(), RETRY_MS).unref();
     } finally {
       this.#pumping = false;
     }
   }
 
-  async #begin(job: Job): Promise<void> {
-    const recording = await this.#store.recording(job.recordingId);
-    if (recording === null) return;
-    await this.#store.setJob(job.id, { state: 'running', stage: 'ingest', started_utc_s: Date.now() / 1000 });
-    await this.#store.setRecordingState(recording.id, 'analysing', null);
+  async #begin(queued: Job): Promise<void> {
+    const running: RunningJob = {
+      job: { ...queued, state: 'running', stage: 'ingest' },
+      abort: new AbortController(),
+      settled: Promise.resolve(),
+    };
+    // In the map before anything is awaited: a cancellation from now on finds it.
+    this.#running.set(queued.id, running);
+    try {
+      await this.#store.jobs.begin(queued.id);
+      await this.#store.setRecordingState(queued.recordingId, 'analysing', null);
+    } catch (error) {
+      this.#running.delete(queued.id);
+      throw error;
+    }
+    running.settled = this.#run(running).finally(() => {
+      this.#running.delete(queued.id);
+      if (!this.#closing) void this.#pump();
+    });
+  }
+
+  /** One job from thread to table; never throws. */
+  async #run({ job, abort }: RunningJob): Promise<void> {
+    let name = '';
+    try {
+      const recording = await this.#store.recording(job.recordingId);
+      if (recording === null) return;
+      ({ name } = recording);
+      this.emit('job', { ...job });
+      this.emit('recording', recording);
+      const answer = await this.#analyse(job, recording, abort.signal).catch((crash: unknown) => ({
+        fault: abort.signal.aborted ? CANCELLED : crashFault(name, crash),
+      }));
+      // A thread ended by the closing server is no failure of its job: it is done again at the next start.
+      if (this.#closing && 'fault' in answer) return;
+      if ('fault' in answer) await this.#finish(job, answer.fault === CANCELLED ? 'cancelled' : 'failed', answer.fault);
+      else await this.#keep(job, recording, answer.analysis);
+    } catch (error) {
+      this.#onTrouble(error);
+      await this.#finish(job, 'failed', storeFault(name, error)).catch(this.#onTrouble);
+    }
+  }
+
+  async #analyse(job: Job, recording: RecordingSummary, signal: AbortSignal): Promise<AnalysisAnswer> {
+    const { port1, port2 } = new MessageChannel();
+    const started = performance.now();
+    port1.on('message', ({ stage, share, bytesRead, curvesFound }: Progress) => {
+      const elapsedS = (performance.now() - started) / 1000;
+      const secondsLeft = share > 0.02 ? (elapsedS / share) * (1 - share) : null;
+      Object.assign(job, { stage, progress: share, bytesRead, curvesFound, secondsLeft });
+      this.emit('job', { ...job });
+    });
     const order: AnalysisOrder = {
       path: this.#store.raw.path(recording.id),
       name: recording.name,
       columns: await this.#store.columnNames(recording.id),
+      port: port2,
     };
-    const worker = new Worker(workerFile(), { workerData: order, resourceLimits: { maxOldGenerationSizeMb: HEAP_MB } });
-    const running: RunningJob = { job: { ...job, state: 'running', stage: 'ingest' }, worker, cancelled: false };
-    this.#running.set(job.id, running);
-    await this.#tellRecording(recording.id);
-    const started = performance.now();
-    let answered: AnalysisAnswer | null = null;
-    let crash: unknown = null;
-    worker.on('message', (answer: AnalysisAnswer) => {
-      if (answer.kind !== 'progress') {
-        answered = answer;
-        return;
-      }
-      const { stage, share, bytesRead, curvesFound } = answer.progress;
-      const elapsedS = (performance.now() - started) / 1000;
-      const secondsLeft = share > 0.02 ? (elapsedS / share) * (1 - share) : null;
-      Object.assign(running.job, { stage, progress: share, bytesRead, curvesFound, secondsLeft });
-      this.emit('job', { ...running.job });
-    });
-    worker.on('error', (error) => {
-      crash = error;
-    });
-    worker.on('exit', () => {
-      void this.#settle(running, recording, answered, crash).catch((error: unknown) => {
-        console.error(`The result of "${recording.name}" could not be stored: ${String(error)}`);
-      });
-    });
-  }
-
-  async #settle(
-    running: RunningJob,
-    recording: RecordingSummary,
-    answer: AnalysisAnswer | null,
-    crash: unknown,
-  ): Promise<void> {
     try {
-      if (this.#closing && answer?.kind !== 'done') return;
-      if (running.cancelled) await this.#finish(running.job, 'cancelled', CANCELLED);
-      else if (answer?.kind === 'fault') await this.#finish(running.job, 'failed', answer.fault);
-      else if (answer?.kind === 'done') await this.#keep(running.job, recording, answer.analysis);
-      else await this.#finish(running.job, 'failed', crashFault(recording.name, crash));
-    } catch (error) {
-      await this.#finish(running.job, 'failed', storeFault(recording.name, error));
+      return (await this.#pool.run(order, { signal, transferList: [port2] })) as AnalysisAnswer;
     } finally {
-      this.#running.delete(running.job.id);
-      if (!this.#closing) void this.#pump();
+      port1.close();
     }
   }
 
-  async #keep(job: Job, recording: RecordingSummary, analysis: Parameters<typeof resultsOf>[2]): Promise<void> {
+  async #keep(job: Job, recording: RecordingSummary, analysis: Analysis): Promise<void> {
     const refusal = analysis.refused[0];
     if (analysis.recordings.length === 0 && refusal !== undefined) {
       await this.#finish(job, 'failed', refusal.fault);
       return;
     }
-    const { facts, runs } = resultsOf(recording.id, recording.name, analysis);
-    // Deleted while it was analysed: there is nothing left to keep the result for.
-    if ((await this.#store.recording(recording.id)) === null) return;
+    const { facts, runs } = resultsOf(recording, analysis);
     await this.#store.saveAnalysis(recording.id, facts, runs);
-    await this.#store.setJob(job.id, { state: 'done', stage: 'done', progress: 1, fault: null });
-    this.emit('job', { ...job, state: 'done', stage: 'done', progress: 1, secondsLeft: 0 });
+    const outcome = {
+      state: 'done',
+      stage: 'done',
+      progress: 1,
+      bytesRead: recording.bytes,
+      curvesFound: runs.reduce((sum, { summary }) => sum + summary.curveCount, 0),
+      secondsLeft: 0,
+    } as const;
+    await this.#store.jobs.set(job.id, {
+      state: outcome.state,
+      stage: outcome.stage,
+      progress: outcome.progress,
+      bytes_read: outcome.bytesRead,
+      curves_found: outcome.curvesFound,
+      fault: null,
+    });
+    this.emit('job', Object.assign(job, outcome));
     await this.#tellRecording(recording.id);
   }
 
   async #finish(job: Job, state: 'failed' | 'cancelled', fault: Fault): Promise<void> {
-    await this.#store.setJob(job.id, { state, stage: state, fault });
+    await this.#store.jobs.set(job.id, { state, stage: state, fault });
     await this.#store.setRecordingState(job.recordingId, 'refused', fault);
-    this.emit('job', {
-      ...job,
-      state,
-      stage: state,
-      fault: { ...fault, place: { ...fault.place } },
-      secondsLeft: null,
-    });
+    this.emit('job', Object.assign(job, { state, stage: state, fault, secondsLeft: null }));
     await this.#tellRecording(job.recordingId);
   }
 
@@ -197,43 +263,9 @@ export class JobQueue extends EventEmitter<QueueEvents> {
   }
 }
 
-const CANCELLED: Fault = {
-  code: 'jobs/cancelled',
-  cause: 'the analysis was cancelled',
-  place: {},
-  remedy: 'Start it again from the list of recordings',
-};
-
-function crashFault(file: string, crash: unknown): Fault {
-  const outOfMemory = (crash as { code?: string } | null)?.code === 'ERR_WORKER_OUT_OF_MEMORY';
-  return {
-    code: outOfMemory ? 'jobs/out-of-memory' : 'jobs/ended',
-    cause: outOfMemory
-      ? 'the analysis needed more memory than it may use'
-      : 'the analysis ended before it had a result',
-    place: { file },
-    remedy: outOfMemory
-      ? 'Split the recording into shorter ones'
-      : 'Start it again; if it ends again, keep the recording and report it to the makers of this program',
-  };
-}
-
-function storeFault(file: string, error: unknown): Fault {
-  if (error instanceof BendbookError) return error.fault;
-  const full = (error as { code?: string }).code === 'ENOSPC' || /disk is full/i.test(String(error));
-  return {
-    code: full ? 'store/disk-full' : 'store/not-written',
-    cause: full ? 'the disk is full' : 'the result could not be written',
-    place: { file },
-    remedy: full
-      ? 'Free some space in the data folder, then start the analysis again'
-      : 'Check the data folder, then start the analysis again',
-  };
-}
-
 /** Threads load JavaScript: from sources (tests) the built file is taken. */
-function workerFile(): URL {
-  const beside = new URL('./analysis-worker.js', import.meta.url);
-  if (existsSync(fileURLToPath(beside))) return beside;
-  return new URL('../../dist/server/jobs/analysis-worker.js', import.meta.url);
+function workerFile(): string {
+  const beside = fileURLToPath(new URL('./analysis-worker.js', import.meta.url));
+  if (existsSync(beside)) return beside;
+  return fileURLToPath(new URL('../../dist/server/jobs/analysis-worker.js', import.meta.url));
 }

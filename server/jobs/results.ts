@@ -8,17 +8,29 @@ import type { NewRun, RecordingFacts } from '../store/store.ts';
  * their runs are numbered through, their findings and refusals listed together.
  */
 export function resultsOf(
-  recordingId: string,
-  name: string,
+  upload: Pick<RecordingSummary, 'id' | 'name' | 'title'>,
   analysis: Analysis,
 ): { facts: RecordingFacts; runs: NewRun[] } {
   const { recordings, refused } = analysis;
   const first = recordings[0];
   const several = recordings.length > 1;
+  // Titled otherwise than by its file name: by whoever brought it in, or by an earlier analysis of the same file.
+  const given = upload.title !== upload.name ? upload.title : '';
   const runs: NewRun[] = [];
   for (const recording of recordings) {
     for (const run of recording.runs)
-      runs.push(newRun(recordingId, runs.length + 1, runName(name, recording, run, several), run));
+      runs.push(
+        newRun(
+          upload.id,
+          runs.length + 1,
+          runName(
+            several ? recording.recording.name : given || recording.recording.title || upload.name,
+            recording,
+            run,
+          ),
+          run,
+        ),
+      );
   }
   const findings: RecordingSummary['findings'] = recordings.flatMap((r) =>
     r.findings.map((f) => wireFinding(several ? { ...f, message: `${r.recording.name}: ${f.message}` } : f)),
@@ -36,7 +48,7 @@ export function resultsOf(
   }
   return {
     facts: {
-      title: several || first === undefined || first.recording.title === '' ? name : first.recording.title,
+      title: several || first === undefined || first.recording.title === '' ? upload.name : first.recording.title,
       format: several ? 'archive' : (first?.recording.format ?? ''),
       encoding: first?.recording.encoding ?? '',
       fixCount: recordings.reduce((sum, r) => sum + r.recording.fixCount, 0),
@@ -70,8 +82,7 @@ function newRun(recordingId: string, number: number, name: string, run: Analysed
   };
 }
 
-function runName(upload: string, recording: AnalysedRecording, run: AnalysedRun, several: boolean): string {
-  const base = several ? recording.recording.name : recording.recording.title || upload;
+function runName(base: string, recording: AnalysedRecording, run: AnalysedRun): string {
   return recording.runs.length > 1 ? `${base}, run ${String(run.number)}` : base;
 }
 

@@ -1,5 +1,6 @@
 import { mkdir, readdir, readFile, rename, rm, writeFile } from 'node:fs/promises';
 import { join } from 'node:path';
+import { BendbookError } from '../../shared/model/fault.ts';
 import type { Profile } from '../../shared/model/motion.ts';
 
 /** Columns of a profile in the order in which they lie in the file; names and element types are the format. */
@@ -45,7 +46,18 @@ export class ProfileFiles {
   }
 
   async read(runId: string): Promise<Profile> {
-    return decodeProfile(await readFile(this.#path(runId)));
+    try {
+      return decodeProfile(await readFile(this.#path(runId)));
+    } catch (error) {
+      throw new BendbookError(
+        'store/result-missing',
+        {
+          cause: `the profile of this run cannot be read: ${error instanceof Error ? error.message : String(error)}`,
+          remedy: 'Analyse the recording again',
+        },
+        { cause: error },
+      );
+    }
   }
 
   async remove(runId: string): Promise<void> {
@@ -79,6 +91,8 @@ export function encodeProfile(profile: Profile): Buffer {
 export function decodeProfile(bytes: Buffer): Profile {
   if (bytes.toString('latin1', 0, 8) !== MAGIC) throw new Error('not a profile file of this version');
   const count = bytes.readUInt32LE(8);
+  const bytesPerPlace = LAYOUT.reduce((sum, [, Column]) => sum + Column.BYTES_PER_ELEMENT, 0);
+  if (bytes.length !== HEADER_BYTES + count * bytesPerPlace) throw new Error('the profile file is cut off');
   const profile: Record<string, unknown> = { count, spacingM: bytes.readDoubleLE(16) };
   let offset = HEADER_BYTES;
   for (const [name, Column] of LAYOUT) {

@@ -2,17 +2,23 @@ import { createHash } from 'node:crypto';
 import { createReadStream } from 'node:fs';
 import { mkdir, open, readdir, readFile, rename, rm, stat, writeFile } from 'node:fs/promises';
 import { join } from 'node:path';
+import { z } from 'zod';
+import { ColumnNames } from '../../shared/schema/api.ts';
+import { Mode } from '../../shared/schema/common.ts';
 
-/** What is needed to list a recording again when the database is lost. */
-export interface Sidecar {
-  readonly id: string;
-  readonly name: string;
-  readonly bytes: number;
-  readonly sha256: string;
-  readonly uploadedUtcS: number;
-  readonly demo: boolean;
-  readonly mode: 'rail' | 'road' | null;
-}
+/** What is needed to list a recording again when the database is lost: the JSON beside each raw file. */
+const Sidecar = z.object({
+  id: z.string(),
+  name: z.string(),
+  title: z.string().nullable(),
+  bytes: z.number(),
+  sha256: z.string(),
+  uploadedUtcS: z.number(),
+  demo: z.boolean(),
+  mode: Mode.nullable(),
+  columns: ColumnNames,
+});
+export type Sidecar = z.infer<typeof Sidecar>;
 
 /**
  * Uploaded files, byte for byte, each with a small JSON beside it: `<id>.raw` and `<id>.json` under
@@ -35,8 +41,9 @@ export class RawFiles {
     await mkdir(this.#folder, { recursive: true });
     const names = new Set(await readdir(this.#folder));
     for (const name of names) {
-      const whole = name.endsWith('.json') || names.has(name.replace(/\.raw$/, '.json'));
-      if (!whole || name.endsWith('.new')) await rm(join(this.#folder, name), { force: true });
+      const halfMade = name.endsWith('.raw') && !names.has(name.replace(/\.raw$/, '.json'));
+      const rawGone = name.endsWith('.json') && !names.has(name.replace(/\.json$/, '.raw'));
+      if (halfMade || rawGone || name.endsWith('.new')) await rm(join(this.#folder, name), { force: true });
     }
   }
 
@@ -58,12 +65,16 @@ export class RawFiles {
     // The JSON first: a raw file without it is swept at the next start.
     await rm(join(this.#folder, `${id}.json`), { force: true });
     await rm(this.path(id), { force: true });
+    await rm(join(this.#folder, `${id}.json.new`), { force: true });
   }
 
+  /** All whole files, oldest first; one whose JSON cannot be read is described from its bytes. */
   async list(): Promise<Sidecar[]> {
     const found: Sidecar[] = [];
     for (const name of await readdir(this.#folder)) {
-      if (name.endsWith('.json')) found.push(JSON.parse(await readFile(join(this.#folder, name), 'utf8')) as Sidecar);
+      if (!name.endsWith('.json')) continue;
+      const id = name.replace(/\.json$/, '');
+      found.push((await readSidecar(join(this.#folder, name))) ?? (await describeRaw(id, this.path(id))));
     }
     return found.sort((a, b) => a.uploadedUtcS - b.uploadedUtcS);
   }
@@ -74,6 +85,22 @@ export async function fingerprint(path: string): Promise<{ bytes: number; sha256
   const sum = createHash('sha256');
   for await (const chunk of createReadStream(path)) sum.update(chunk as Buffer);
   return { bytes: (await stat(path)).size, sha256: sum.digest('hex') };
+}
+
+async function readSidecar(path: string): Promise<Sidecar | null> {
+  try {
+    return Sidecar.parse(JSON.parse(await readFile(path, 'utf8')));
+  } catch (error) {
+    // Unreadable text or other fields: the recording itself is there all the same.
+    if (error instanceof SyntaxError || error instanceof z.ZodError) return null;
+    throw error;
+  }
+}
+
+async function describeRaw(id: string, path: string): Promise<Sidecar> {
+  const { bytes, sha256 } = await fingerprint(path);
+  const uploadedUtcS = (await stat(path)).mtimeMs / 1000;
+  return { id, name: id, title: null, bytes, sha256, uploadedUtcS, demo: false, mode: null, columns: {} };
 }
 
 async function flush(path: string): Promise<void> {

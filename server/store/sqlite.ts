@@ -17,10 +17,17 @@ export interface SqliteConnection {
 export async function openSqlite(path: string): Promise<SqliteConnection> {
   const module = await sqliteModule();
   const connection = new module.DatabaseSync(path);
-  // FULL: an acknowledged recording survives a killed process and a power cut alike.
-  connection.exec(
-    'PRAGMA journal_mode = WAL; PRAGMA synchronous = FULL; PRAGMA foreign_keys = ON; PRAGMA busy_timeout = 5000',
-  );
+  try {
+    // FULL: an acknowledged recording survives a killed process and a power cut alike.
+    // EXCLUSIVE: a second server on one data folder would sweep the uploads and repeat the jobs of the
+    // first; the lock of the operating system ends with the process, however it ends.
+    connection.exec(
+      'PRAGMA busy_timeout = 1000; PRAGMA locking_mode = EXCLUSIVE; PRAGMA journal_mode = WAL; PRAGMA synchronous = FULL; PRAGMA foreign_keys = ON',
+    );
+  } catch (error) {
+    connection.close();
+    throw error;
+  }
   return connection;
 }
 

@@ -1,21 +1,21 @@
+import { mkdir } from 'node:fs/promises';
 import { join } from 'node:path';
 import type { Alignment } from '../../shared/model/alignment.ts';
-import type { Fault } from '../../shared/model/fault.ts';
+import { BendbookError, type Fault } from '../../shared/model/fault.ts';
 import type { Finding } from '../../shared/model/finding.ts';
 import type { LogQuality, Profile } from '../../shared/model/motion.ts';
 import type { RunPassages } from '../../shared/model/passage.ts';
 import type { Waypoint } from '../../shared/model/recording.ts';
-import type { ColumnNames, Job, RecordingSummary, RunSummary } from '../../shared/schema/api.ts';
-import { openDatabase, type Database } from './database.ts';
-import { parseWire, stringifyWire } from './json.ts';
+import type { ColumnNames, RecordingSummary, RunSummary } from '../../shared/schema/api.ts';
+import type { Mode } from '../../shared/schema/common.ts';
+import { openDatabase, setAside, type Database } from './database.ts';
+import { DocumentTable } from './document-table.ts';
+import { JobTable } from './job-table.ts';
+import { parseWire } from './json.ts';
 import { ProfileFiles } from './profile-files.ts';
 import { RawFiles, type Sidecar } from './raw-files.ts';
-import type { Tables } from './tables.ts';
-
-type RecordingRow = Tables['recordings'];
-type RunRow = Tables['runs'];
-type JobRow = Tables['jobs'];
-export type DocumentKind = Tables['documents']['kind'];
+import { newRecordingRow, recordingSummary, runRow, runSummary, SUMMARY_COLUMNS } from './rows.ts';
+import type { RecordingRow } from './tables.ts';
 
 /** A run as it is stored: summary, alignment, passages, findings; its profile lies in a file. */
 export interface StoredRun {
@@ -39,33 +39,46 @@ export interface RecordingFacts {
   readonly encoding: string;
   readonly fixCount: number;
   readonly columns: RecordingSummary['columns'];
-  readonly findings: RecordingSummary["findings"];
+  readonly findings: RecordingSummary['findings'];
   readonly waypoints: readonly Waypoint[];
 }
 
 /** Recordings, runs, results, jobs and the user's documents in one data folder. Knows nothing of curves. */
 export class Store {
   readonly raw: RawFiles;
+  readonly jobs: JobTable;
+  readonly documents: DocumentTable;
   readonly #profiles: ProfileFiles;
   readonly #database: Database;
 
   private constructor(database: Database, raw: RawFiles, profiles: ProfileFiles) {
     this.#database = database;
+    this.jobs = new JobTable(database.db);
+    this.documents = new DocumentTable(database.db);
     this.raw = raw;
     this.#profiles = profiles;
   }
 
   /**
    * Opens or makes the data folder. Uploads that a killed server left half made are swept; raw
-   * recordings that the database does not know (it was lost or moved away) are listed again.
+   * recordings that the database does not know (it was lost or set aside) are listed again.
+   * With `recover` a damaged database is set aside first.
+   *
+   * @throws BendbookError `store/damaged`, `store/in-use`, `store/newer`, `store/not-opened`
    */
-  static async open(dataDir: string): Promise<Store> {
-    const raw = new RawFiles(dataDir);
-    await raw.prepare();
-    const profiles = new ProfileFiles(dataDir);
-    await profiles.prepare();
-    const store = new Store(await openDatabase(join(dataDir, 'bendbook.sqlite')), raw, profiles);
-    await store.#reconcile();
+  static async open(dataDir: string, { recover = false } = {}): Promise<Store> {
+    await makeFolder(dataDir);
+    // The database comes first: its lock makes sure that no other server is at work in this folder.
+    const database = await openOrRecover(join(dataDir, 'bendbook.sqlite'), recover);
+    const store = new Store(database, new RawFiles(dataDir), new ProfileFiles(dataDir));
+    try {
+      await store.raw.prepare();
+      await store.#profiles.prepare();
+      await store.#reconcile();
+    } catch (error) {
+      await store.close();
+      throw error;
+    }
     return store;
   }
 
@@ -79,38 +92,24 @@ export class Store {
     const known = new Set((await db.selectFrom('recordings').select('id').execute()).map(({ id }) => id));
     for (const sidecar of onDisk) if (!known.has(sidecar.id)) await this.#insertRecording(sidecar);
     const present = new Set(onDisk.map(({ id }) => id));
-    for (const id of known) if (!present.has(id)) await db.deleteFrom('recordings').where('id', '=', id).execute();
+    for (const id of known) if (!present.has(id)) await this.setRecordingFault(id, RAW_MISSING);
     const runs = await db.selectFrom('runs').select('id').execute();
     await this.#profiles.sweep(new Set(runs.map(({ id }) => id)));
   }
 
-  /** Keeps an uploaded file and lists it. When this returns, both survive a killed server. */
+  /** Keeps an uploaded file and lists it: both or, when this throws, neither. What it returned from survives a killed server. */
   async addRecording(temporary: string, sidecar: Sidecar): Promise<void> {
-    await this.raw.keep(temporary, sidecar);
-    await this.#insertRecording(sidecar);
+    try {
+      await this.raw.keep(temporary, sidecar);
+      await this.#insertRecording(sidecar);
+    } catch (error) {
+      await this.raw.remove(sidecar.id);
+      throw error;
+    }
   }
 
   async #insertRecording(sidecar: Sidecar): Promise<void> {
-    const row: RecordingRow = {
-      id: sidecar.id,
-      name: sidecar.name,
-      title: sidecar.name,
-      format: '',
-      encoding: '',
-      bytes: sidecar.bytes,
-      sha256: sidecar.sha256,
-      uploaded_utc_s: sidecar.uploadedUtcS,
-      state: 'waiting',
-      fault_json: null,
-      demo: sidecar.demo ? 1 : 0,
-      fix_count: 0,
-      columns_json: '[]',
-      column_names_json: '{}',
-      findings_json: '[]',
-      waypoints_json: '[]',
-      mode: sidecar.mode,
-    };
-    await this.#database.db.insertInto('recordings').values(row).execute();
+    await this.#database.db.insertInto('recordings').values(newRecordingRow(sidecar)).execute();
   }
 
   async recordings(): Promise<RecordingSummary[]> {
@@ -125,7 +124,12 @@ export class Store {
     const db = this.#database.db;
     const row = await db.selectFrom('recordings').selectAll().where('id', '=', id).executeTakeFirst();
     if (row === undefined) return null;
-    const runs = await db.selectFrom('runs').selectAll().where('recording_id', '=', id).orderBy('number').execute();
+    const runs = await db
+      .selectFrom('runs')
+      .select(SUMMARY_COLUMNS)
+      .where('recording_id', '=', id)
+      .orderBy('number')
+      .execute();
     const jobs = await db
       .selectFrom('jobs')
       .selectAll()
@@ -161,6 +165,33 @@ export class Store {
       .execute();
   }
 
+  /** The setup of this recording alone, or null; and the mode that it was brought in with, or null. */
+  async recordingSetup(id: string): Promise<{ setup: unknown; mode: Mode | null }> {
+    const row = await this.#database.db
+      .selectFrom('recordings')
+      .select(['setup_json', 'mode'])
+      .where('id', '=', id)
+      .executeTakeFirst();
+    const setup = row?.setup_json ?? null;
+    return { setup: setup === null ? null : (JSON.parse(setup) as unknown), mode: row?.mode ?? null };
+  }
+
+  async setRecordingSetup(id: string, setup: unknown): Promise<void> {
+    await this.#database.db
+      .updateTable('recordings')
+      .set({ setup_json: setup === null ? null : JSON.stringify(setup) })
+      .where('id', '=', id)
+      .execute();
+  }
+
+  async setRecordingFault(id: string, fault: Fault): Promise<void> {
+    await this.#database.db
+      .updateTable('recordings')
+      .set({ fault_json: JSON.stringify(fault) })
+      .where('id', '=', id)
+      .execute();
+  }
+
   async setRecordingState(id: string, state: RecordingRow['state'], fault: Fault | null): Promise<void> {
     await this.#database.db
       .updateTable('recordings')
@@ -172,6 +203,14 @@ export class Store {
   /** Replaces the results of a recording: profiles first, then facts and runs in one transaction. */
   async saveAnalysis(recordingId: string, facts: RecordingFacts, runs: readonly NewRun[]): Promise<void> {
     const db = this.#database.db;
+    const recording = await db
+      .selectFrom('recordings')
+      .select('given_title')
+      .where('id', '=', recordingId)
+      .executeTakeFirst();
+    // Deleted while it was analysed: there is nothing to keep the result for.
+    if (recording === undefined) return;
+    const givenTitle = recording.given_title;
     const before = await db.selectFrom('runs').select('id').where('recording_id', '=', recordingId).execute();
     for (const run of runs) await this.#profiles.write(run.summary.id, run.profile);
     await db.transaction().execute(async (transaction) => {
@@ -179,7 +218,7 @@ export class Store {
       await transaction
         .updateTable('recordings')
         .set({
-          title: facts.title,
+          ...(givenTitle === null ? { title: facts.title } : {}),
           format: facts.format,
           encoding: facts.encoding,
           fix_count: facts.fixCount,
@@ -208,7 +247,12 @@ export class Store {
   }
 
   async runs(): Promise<RunSummary[]> {
-    const rows = await this.#database.db.selectFrom('runs').selectAll().orderBy('start_utc_s').orderBy('id').execute();
+    const rows = await this.#database.db
+      .selectFrom('runs')
+      .select(SUMMARY_COLUMNS)
+      .orderBy('start_utc_s')
+      .orderBy('id')
+      .execute();
     return rows.map(runSummary);
   }
 
@@ -231,197 +275,37 @@ export class Store {
   async setLine(runId: string, lineId: string | null): Promise<void> {
     await this.#database.db.updateTable('runs').set({ line_id: lineId }).where('id', '=', runId).execute();
   }
+}
 
-  // Jobs.
+const RAW_MISSING: Fault = {
+  code: 'store/raw-missing',
+  cause: 'the uploaded file is no longer in the data folder',
+  place: {},
+  remedy: 'Results made from it are kept; upload it again to analyse it anew',
+};
 
-  async addJob(id: string, recordingId: string, createdUtcS: number): Promise<Job> {
-    const row: JobRow = {
-      id,
-      recording_id: recordingId,
-      state: 'queued',
-      stage: 'queued',
-      progress: 0,
-      bytes_read: 0,
-      curves_found: 0,
-      fault_json: null,
-      created_utc_s: createdUtcS,
-      started_utc_s: null,
-    };
-    await this.#database.db.insertInto('jobs').values(row).execute();
-    return jobOf(row);
-  }
-
-  async jobs(): Promise<Job[]> {
-    const rows = await this.#database.db
-      .selectFrom('jobs')
-      .selectAll()
-      .orderBy('created_utc_s', 'desc')
-      .limit(500)
-      .execute();
-    return rows.map(jobOf);
-  }
-
-  async job(id: string): Promise<Job | null> {
-    const row = await this.#database.db.selectFrom('jobs').selectAll().where('id', '=', id).executeTakeFirst();
-    return row === undefined ? null : jobOf(row);
-  }
-
-  async nextQueuedJob(): Promise<Job | null> {
-    const row = await this.#database.db
-      .selectFrom('jobs')
-      .selectAll()
-      .where('state', '=', 'queued')
-      .orderBy('created_utc_s')
-      .orderBy('id')
-      .executeTakeFirst();
-    return row === undefined ? null : jobOf(row);
-  }
-
-  async setJob(
-    id: string,
-    change: Partial<Pick<JobRow, 'state' | 'stage' | 'progress' | 'started_utc_s'>> & { fault?: Fault | null },
-  ): Promise<void> {
-    const { fault, ...rest } = change;
-    await this.#database.db
-      .updateTable('jobs')
-      .set({ ...rest, ...(fault === undefined ? {} : { fault_json: fault === null ? null : JSON.stringify(fault) }) })
-      .where('id', '=', id)
-      .execute();
-  }
-
-  /** Jobs that a killed server left running go back to the queue; recordings without a job are returned. */
-  async requeueInterrupted(): Promise<string[]> {
-    const db = this.#database.db;
-    await db
-      .updateTable('jobs')
-      .set({ state: 'queued', stage: 'queued', progress: 0 })
-      .where('state', '=', 'running')
-      .execute();
-    const idle = await db
-      .selectFrom('recordings')
-      .select('id')
-      .where('state', 'in', ['waiting', 'analysing'])
-      .where('id', 'not in', db.selectFrom('jobs').select('recording_id').where('state', '=', 'queued'))
-      .orderBy('uploaded_utc_s')
-      .execute();
-    return idle.map(({ id }) => id);
-  }
-
-  // Documents and settings.
-
-  async documents(kind: DocumentKind): Promise<unknown[]> {
-    const rows = await this.#database.db
-      .selectFrom('documents')
-      .selectAll()
-      .where('kind', '=', kind)
-      .orderBy('id')
-      .execute();
-    return rows.map(({ body_json }) => JSON.parse(body_json) as unknown);
-  }
-
-  async putDocument(kind: DocumentKind, id: string, body: unknown): Promise<void> {
-    const body_json = JSON.stringify(body);
-    await this.#database.db
-      .insertInto('documents')
-      .values({ kind, id, body_json })
-      .onConflict((conflict) => conflict.columns(['kind', 'id']).doUpdateSet({ body_json }))
-      .execute();
-  }
-
-  async removeDocument(kind: DocumentKind, id: string): Promise<boolean> {
-    const { numDeletedRows } = await this.#database.db
-      .deleteFrom('documents')
-      .where('kind', '=', kind)
-      .where('id', '=', id)
-      .executeTakeFirst();
-    return numDeletedRows > 0n;
-  }
-
-  async setting(key: string): Promise<unknown> {
-    const row = await this.#database.db.selectFrom('settings').selectAll().where('key', '=', key).executeTakeFirst();
-    return row === undefined ? null : (JSON.parse(row.value_json) as unknown);
-  }
-
-  async putSetting(key: string, value: unknown): Promise<void> {
-    const value_json = JSON.stringify(value);
-    await this.#database.db
-      .insertInto('settings')
-      .values({ key, value_json })
-      .onConflict((conflict) => conflict.column('key').doUpdateSet({ value_json }))
-      .execute();
+async function openOrRecover(path: string, recover: boolean): Promise<Database> {
+  try {
+    return await openDatabase(path);
+  } catch (error) {
+    if (!recover || !(error instanceof BendbookError) || error.fault.code !== 'store/damaged') throw error;
+    await setAside(path);
+    return await openDatabase(path);
   }
 }
 
-function recordingSummary(row: RecordingRow, runs: readonly RunSummary[], jobs: readonly JobRow[]): RecordingSummary {
-  return {
-    id: row.id,
-    name: row.name,
-    title: row.title,
-    format: row.format,
-    encoding: row.encoding,
-    bytes: row.bytes,
-    sha256: row.sha256,
-    uploadedUtcS: row.uploaded_utc_s,
-    state: row.state,
-    fault: row.fault_json === null ? null : (JSON.parse(row.fault_json) as Fault),
-    demo: row.demo === 1,
-    fixCount: row.fix_count,
-    columns: JSON.parse(row.columns_json) as RecordingSummary['columns'],
-    findings: JSON.parse(row.findings_json) as RecordingSummary['findings'],
-    runs: runs.filter(({ recordingId }) => recordingId === row.id),
-    jobId: jobs.filter(({ recording_id }) => recording_id === row.id).at(-1)?.id ?? null,
-  };
-}
-
-function runSummary(row: RunRow): RunSummary {
-  return {
-    id: row.id,
-    recordingId: row.recording_id,
-    name: row.name,
-    startUtcS: row.start_utc_s,
-    durationS: row.duration_s,
-    lengthM: row.length_m,
-    fixCount: row.fix_count,
-    curveCount: row.curve_count,
-    topSpeedKmh: row.top_speed_kmh,
-    lineId: row.line_id,
-    bounds: JSON.parse(row.bounds_json) as RunSummary['bounds'],
-  };
-}
-
-function runRow(recordingId: string, run: NewRun): RunRow {
-  const { summary } = run;
-  return {
-    id: summary.id,
-    recording_id: recordingId,
-    number: Number(summary.id.split('.').at(-1)),
-    name: summary.name,
-    start_utc_s: summary.startUtcS,
-    duration_s: summary.durationS,
-    length_m: summary.lengthM,
-    fix_count: summary.fixCount,
-    curve_count: summary.curveCount,
-    top_speed_kmh: summary.topSpeedKmh,
-    line_id: null,
-    bounds_json: JSON.stringify(summary.bounds),
-    quality_json: stringifyWire(run.quality),
-    findings_json: stringifyWire(run.findings),
-    alignment_json: stringifyWire(run.alignment),
-    passages_json: stringifyWire(run.passages),
-  };
-}
-
-function jobOf(row: JobRow): Job {
-  return {
-    id: row.id,
-    recordingId: row.recording_id,
-    state: row.state,
-    stage: row.stage,
-    progress: row.progress,
-    bytesRead: row.bytes_read,
-    curvesFound: row.curves_found,
-    secondsLeft: null,
-    fault: row.fault_json === null ? null : (JSON.parse(row.fault_json) as Fault),
-    createdUtcS: row.created_utc_s,
-  };
+async function makeFolder(path: string): Promise<void> {
+  try {
+    await mkdir(path, { recursive: true });
+  } catch (error) {
+    throw new BendbookError(
+      'store/not-opened',
+      {
+        cause: `the data folder cannot be made: ${error instanceof Error ? error.message : String(error)}`,
+        place: { file: path },
+        remedy: 'Choose a folder that can be written with --data DIR',
+      },
+      { cause: error },
+    );
+  }
 }

@@ -4,6 +4,8 @@ export interface Tables {
     id: string;
     name: string;
     title: string;
+    /** Title given by whoever brought the recording in; goes before the one in the file. */
+    given_title: string | null;
     format: string;
     encoding: string;
     bytes: number;
@@ -18,6 +20,8 @@ export interface Tables {
     findings_json: string;
     waypoints_json: string;
     mode: 'rail' | 'road' | null;
+    /** Setup of this recording alone; null: the one kept for its mode. */
+    setup_json: string | null;
   };
   runs: {
     id: string;
@@ -47,9 +51,15 @@ export interface Tables {
     curves_found: number;
     fault_json: string | null;
     created_utc_s: number;
-    started_utc_s: number | null;
+    /** How often it was begun; a job that ends the server each time must not be begun for ever. */
+    attempts: number;
   };
-  /** Limit sets, vehicles, cant registers and notes that the user keeps: one JSON body each. */
+  /** Limit sets, vehicles and cant registers that the user keeps: one JSON body each. */
   documents: { kind: 'limit-set' | 'vehicle' | 'register'; id: string; body_json: string };
   settings: { key: string; value_json: string };
 }
+
+export type RecordingRow = Tables['recordings'];
+export type RunRow = Tables['runs'];
+export type JobRow = Tables['jobs'];
+export type DocumentKind = Tables['documents']['kind'];

@@ -36,6 +36,8 @@ export const ColumnPreview = z.object({
   columns: z.array(ColumnUse),
   headers: z.array(z.string()),
   rows: z.array(z.array(z.string())),
+  /** Why the columns cannot be told, or null when they can. */
+  fault: Fault.nullable(),
 });
 export type ColumnPreview = z.infer<typeof ColumnPreview>;
 
@@ -196,6 +198,12 @@ export const AssessmentBody = z.object({
   cautions: z.array(z.string()),
 });
 export type AssessmentBody = z.infer<typeof AssessmentBody>;
+
+export const Health = z.object({ ok: z.boolean(), version: z.string() });
+
+/** A cant register just read from a file, with what was noticed about its rows. */
+export const RegisterUpload = CantRegister.extend({ findings: z.array(Finding) });
+export type RegisterUpload = z.infer<typeof RegisterUpload>;
 
 export const Catalogue = z.object({
   limitSets: z.array(LimitSet.extend({ builtIn: z.boolean() })),
