@@ -70,7 +70,7 @@ function buildCurve(
   const endM = exit.outerM;
   const arcStartM = Math.min(entry.innerM, (entry.innerM + exit.innerM) / 2);
   const arcEndM = Math.max(exit.innerM, arcStartM);
-  const speed = arcSpeed(context.motion, stretch.middles[level]!, stretch.middles[level + 1]!);
+  const speed = arcSpeed(context.motion, arcStartM, arcEndM);
   const scaleSd =
     context.scaleSdMps > 0
       ? context.scaleSdMps / (Math.max(1, speed.meanMps) * Math.sqrt(Math.max(1, speed.count)))

@@ -47,9 +47,9 @@ export function fitStretch(
   const pose = startPose === null ? new Float64Array(POSE) : startPose.slice();
   const cholesky = new Cholesky();
   const problem = { equations, stretch, layout, pose, origin, noise, use, cholesky };
-  if (!iterate(problem, 10, false)) return null;
-  if (!iterate(problem, 4, true)) return null;
-  iterate(problem, 3, true);
+  if (!iterate(problem, 40, false)) return null;
+  if (!iterate(problem, 15, true)) return null;
+  iterate(problem, 15, true);
   evaluate(problem, false);
   const { chi2, observations } = equations;
   if (observations < size + 2 || !cholesky.factor(equations.A, size, 0)) return null;
