@@ -41,7 +41,9 @@ export function normalPoints(run: Run, motion: Motion): NormalPoints {
   const observed = observe(run, scratch.position, scratch.doppler);
   const { lagS } = motion.quality.noise;
   const courseRad =
-    lagS === 0 ? observed.courseRad : advanceDoppler(observed, { courseS: lagS, speedS: lagS }, null).courseRad;
+    lagS === 0
+      ? observed.courseRad
+      : advanceDoppler(observed, { courseS: lagS, courseSdS: 0, speedS: lagS, speedSdS: 0 }, null).courseRad;
   const perBin = intervalS < 0.7 * BIN_S ? Math.max(1, Math.round(BIN_S / intervalS)) : 1;
   const most = n;
   const out = {
