@@ -1,3 +1,4 @@
+import { TextDecoder, TextEncoder } from 'node:util';
 import type { ByteSource } from './byte-source.ts';
 
 export type Encoding = 'utf-8' | 'utf-16le' | 'utf-16be' | 'windows-1252';

@@ -223,8 +223,10 @@ class DelimitedReader {
     const end = row.ends[column]!;
     if (start === end) return;
     if (field === 'satellites') {
-      // "11(11)": used and in view.
-      const value = parseInt(row.bytes.toString('latin1', start, end), 10);
+      // "11(11)" is used and in view: leading digits.
+      let digitsEnd = start;
+      while (digitsEnd < end && row.bytes[digitsEnd]! >= 48 && row.bytes[digitsEnd]! <= 57) digitsEnd++;
+      const value = readDecimal(row.bytes, start, digitsEnd);
       if (value >= 0 && value < 255) this.fixes.setByte('satellites', value);
       return;
     }
