@@ -28,8 +28,9 @@ export interface TrueCurve {
   readonly arcEndM: number;
   readonly entry: TrueCurveEnd;
   readonly exit: TrueCurveEnd;
-  /** Mean speed over the circular part by distance, m/s, and largest v^2 |kappa| there, m/s^2. */
+  /** Mean speed by distance over the circular part, m/s. */
   readonly arcSpeedMps: number;
+  /** Largest v^2 |kappa| on the circular part, m/s^2. */
   readonly peakLateralMps2: number;
   /** Share of the time in the curve with good fixes, 0..1. */
   readonly observedShare: number;
@@ -181,10 +182,9 @@ function trueCurves(line: SyntheticLine, travel: Travel, seen: Observation): Tru
     const exit = endOf(index, 1);
     const startM = own.startM - entry.lengthM;
     const endM = own.endM + exit.lengthM;
-    const samples = Array.from({ length: 41 }, (_, k) =>
-      travel.speedAt(own.startM + ((own.endM - own.startM) * k) / 40),
+    const speeds = Array.from({ length: 101 }, (_, k) =>
+      travel.speedAt(own.startM + ((own.endM - own.startM) * k) / 100),
     );
-    const peakSpeed = Math.max(...samples);
     return {
       number: i + 1,
       curvaturePerM: own.startCurvaturePerM,
@@ -194,8 +194,8 @@ function trueCurves(line: SyntheticLine, travel: Travel, seen: Observation): Tru
       arcEndM: own.endM,
       entry,
       exit,
-      arcSpeedMps: samples.reduce((sum, v) => sum + v, 0) / samples.length,
-      peakLateralMps2: peakSpeed ** 2 * Math.abs(own.startCurvaturePerM),
+      arcSpeedMps: speeds.reduce((sum, v) => sum + v, 0) / speeds.length,
+      peakLateralMps2: Math.max(...speeds) ** 2 * Math.abs(own.startCurvaturePerM),
       observedShare: observedShare(travel.timeAt(startM), travel.timeAt(endM), seen),
     };
   });

@@ -158,14 +158,15 @@ function judgeCurve(
     );
   }
 
-  const trueLateral = truth.arcSpeedMps ** 2 * Math.abs(trueKappa);
+  // The speed that was driven over the stretch which the fit calls circular: near a stop the mean depends on its ends.
+  const trueLateral = meanSpeed(sim, toTrue(curve.arcStartM), toTrue(curve.arcEndM)) ** 2 * Math.abs(trueKappa);
   const lateral = speedMps.value ** 2 * Math.abs(curvaturePerM.value);
   const relative = lateral / trueLateral - 1;
   score.lateral.push({
     error: relative,
     held: Math.abs(lateral - trueLateral) <= 1.96 * curve.lateralRelativeSd * lateral,
   });
-  score.lateralOverBound.push((lateral - trueLateral) / bound.lateralSdMps2);
+  score.lateralOverBound.push((relative * truth.arcSpeedMps ** 2 * Math.abs(trueKappa)) / bound.lateralSdMps2);
 
   const passage = fit.passages.passages.find((one) => one.curve.number === curve.number);
   const travel = sim.truth.travel;
@@ -186,6 +187,14 @@ function judgeCurve(
     [curve.exit, truth.exit, bound.exit],
   ] as const;
   for (const [end, trueEnd, endBound] of ends) judgeEnd(score, end, trueEnd, endBound, toTrue);
+}
+
+/** Mean speed by distance, m/s. */
+function meanSpeed(sim: SimulatedRun, fromM: number, toM: number): number {
+  const steps = 100;
+  let sum = 0;
+  for (let k = 0; k <= steps; k += 1) sum += sim.truth.travel.speedAt(fromM + ((toM - fromM) * k) / steps);
+  return sum / (steps + 1);
 }
 
 function judgeEnd(

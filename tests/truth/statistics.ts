@@ -16,8 +16,6 @@ export function rootMeanSquare(values: readonly number[], trimmed = 0): number {
   return kept.length === 0 ? Number.NaN : Math.sqrt(kept.reduce((sum, value) => sum + value, 0) / kept.length);
 }
 
-export const mean = (values: readonly number[]) => values.reduce((sum, value) => sum + value, 0) / values.length;
-
 /** Share of true entries; NaN when there are none. */
 export function share(judged: readonly { readonly held: boolean }[]): number {
   return judged.length === 0 ? Number.NaN : judged.filter((one) => one.held).length / judged.length;

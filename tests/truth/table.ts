@@ -3,7 +3,8 @@ import { parseArgs } from 'node:util';
 import { FAMILY_NAMES, type FamilyName } from '../../data/synthetic/families.ts';
 import type { ReceiverCondition } from '../../data/synthetic/receiver.ts';
 import { runCell, type CellResult } from './bench.ts';
-import { absoluteQuantile, mean, rootMeanSquare, share } from './statistics.ts';
+import { median } from 'simple-statistics';
+import { absoluteQuantile, rootMeanSquare, share } from './statistics.ts';
 
 const HELP = `Accuracy, coverage and time against simulated lines of known geometry.
 
@@ -72,7 +73,7 @@ function tableRow({ cell, score }: CellResult): string[] {
     percent(absoluteQuantile(errors(lateral), 0.5), 2),
     percent(share(lateral)),
     number(rootMeanSquare(lateralOverBound, 0.02), 2),
-    peak.length === 0 ? '-' : `${number(mean(peak), 2)}+-${number(1 / Math.sqrt(peak.length), 2)}`,
+    peak.length === 0 ? '-' : `${number(median(peak), 2)}+-${number(1.25 / Math.sqrt(peak.length), 2)}`,
     number(absoluteQuantile(errors(tangent), 0.5), 2),
     percent(share(tangent)),
     number(rootMeanSquare(tangentOverBound, 0.02), 2),
