@@ -155,7 +155,7 @@ function notesOf(
   if (curve.observedShare < WELL_OBSERVED) {
     notes.push(`Seen by good fixes on ${num(100 * curve.observedShare, 0)} % of the passage only.`);
   }
-  notes.push(...cures, ...curve.remarks);
+  notes.push(...cures, ...curve.remarks.map((remark) => (/[.!?]$/.test(remark) ? remark : `${remark}.`)));
   if (motion !== null && motion.dynamicFactor > 1.15) {
     notes.push(`Modelled roll overshoots the quasi-static one by ${num(100 * (motion.dynamicFactor - 1), 0)} %.`);
   }
@@ -212,7 +212,7 @@ export function assessCurve(run: string, curveCase: CurveCase, setup: Setup, wit
   if (withWorking && motion !== null && isDynamic) addDynamics(judged, motion);
 
   const worst = governing(judged);
-  const needs = needsOf(judged);
+  const needs = needsOf(judged, setup.limits.speedStepKmh);
   const verdict = worst?.result.verdict ?? 'not assessed';
   const failing = judged.filter((j) => j.result.verdict === 'over' || j.result.verdict === 'undecided');
   // Slowing costs time only where it cures something.

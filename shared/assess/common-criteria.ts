@@ -11,7 +11,7 @@ import type { Interval } from './confidence.ts';
 import { combine, intervalAt } from './confidence.ts';
 import type { EndFacts } from './curve-facts.ts';
 import type { Measured, Unmeasured } from './measured.ts';
-import { largestBelow, NEVER_RAN } from './rail-criteria.ts';
+import { largestBelow, NEVER_RAN, unresolvedLength } from './rail-criteria.ts';
 import { num, radiusText } from './text.ts';
 import { verticalCurvature } from './vertical-profile.ts';
 
@@ -124,6 +124,7 @@ export function jerk(curveCase: CurveCase): Measured | Unmeasured {
           `The ${end.place} is shorter than the vehicle's virtual length of ${num(end.lengthM, 1)} m, which is taken instead.`,
         ]
       : [],
+    ...unresolvedLength(end),
     speedFor: (limit, sure) => {
       const dk = end.curvatureChangePerM * (sure ? facts.curvatureHighPerM / facts.curvaturePerM : 1);
       const length = sure ? end.lengthLowM : end.lengthM;
@@ -312,6 +313,7 @@ export function comfort(
         ? ["Quasi-static: the vehicle's natural frequency is not known."]
         : []),
     ],
+    ...unresolvedLength(facts.ends[0]),
     speedFor: (limit) => figures.speedFor(limit, posture),
   };
 }

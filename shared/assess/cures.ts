@@ -1,6 +1,7 @@
 import type { Setup } from '../schema/setup.ts';
 import type { Cure } from '../schema/curve-row.ts';
-import { formatQuantity, STANDARD_GRAVITY_MPS2 } from '../units.ts';
+import { formatQuantity, mpsToKmh, STANDARD_GRAVITY_MPS2 } from '../units.ts';
+import { roundDownToStep } from '../curving/advisory-speed.ts';
 import { criterionOf } from '../limits/criteria.ts';
 import { limitFor } from '../limits/lookup.ts';
 import type { CurveCase } from './lateral-frame.ts';
@@ -16,8 +17,18 @@ export interface Needs {
   readonly transitionM: number | null;
 }
 
+/**
+ * Speed that a criterion allows at the chosen confidence, km/h. A criterion that is within at the recorded speed allows at least that
+ * (in whole steps): the interval of a passage is narrower than that of a speed never driven.
+ */
+function speedOf({ result, measured }: Judged, stepKmh: number): number | null {
+  const sure = result.complyingSpeedSureKmh;
+  if (sure === null || measured === null || result.verdict !== 'within') return sure;
+  return Math.max(sure, roundDownToStep(mpsToKmh(measured.speedMps), stepKmh));
+}
+
 /** The most demanding answer over all criteria. */
-export function needsOf(judged: readonly Judged[]): Needs {
+export function needsOf(judged: readonly Judged[], stepKmh: number): Needs {
   const least = (values: (number | null)[]): number | null => {
     const known = values.filter((v) => v !== null);
     return known.length === 0 ? null : Math.min(...known);
@@ -27,7 +38,7 @@ export function needsOf(judged: readonly Judged[]): Needs {
     return known.length === 0 ? null : Math.max(...known);
   };
   return {
-    speedKmh: least(judged.map((j) => j.result.complyingSpeedSureKmh)),
+    speedKmh: least(judged.map((j) => speedOf(j, stepKmh))),
     cantMm: most(judged.map((j) => j.result.complyingCantMm)),
     transitionM: most(judged.map((j) => j.result.neededTransitionM)),
   };
@@ -94,7 +105,7 @@ export function curesOf(
   const failing = judged.filter((j) => j.result.verdict === 'over' || j.result.verdict === 'undecided');
   if (failing.length === 0) return [];
   const cures: Cure[] = [];
-  const needs = needsOf(judged);
+  const needs = needsOf(judged, setup.limits.speedStepKmh);
   const bySpeed = failing.filter((j) => j.measured?.speedFor !== undefined);
   if (needs.speedKmh !== null && bySpeed.length > 0) {
     const others = namesWithout(failing, (j) => j.measured?.speedFor !== undefined);
@@ -148,6 +159,7 @@ export function cureText(cure: Cure): string {
   const what = { speed: 'Speed', cant: 'Cant', transition: 'Transition' }[cure.kind];
   const value = formatQuantity(cure.value, cure.unit, 0);
   const state = cure.feasible ? 'would comply' : `would not do: ${cure.against}`;
-  const cost = cure.timeCostS !== null && cure.timeCostS > 0 ? ` at a cost of ${num(cure.timeCostS, 1)} s` : '';
+  const cost =
+    cure.feasible && cure.timeCostS !== null && cure.timeCostS > 0 ? ` at a cost of ${num(cure.timeCostS, 1)} s` : '';
   return `${what} ${value} ${state}${cost}.`;
 }

@@ -10,3 +10,4 @@ export { resonanceFindings } from './resonance.ts';
 export { runMotionDose } from './motion-dose.ts';
 export { fitRegister } from './cant/fit-register.ts';
 export { curveGeometryLines } from './geometry-text.ts';
+export { passagesFromWire } from './from-wire.ts';

@@ -14,6 +14,11 @@ export interface Measured extends Interval {
   readonly substituted: () => string;
   /** A limit that comes with the place rather than with the set: the permitted speed of the line. */
   readonly placeLimit?: Limit;
+  /**
+   * Set when the recording cannot tell the length of the transition that the figure rests on: an interval that then straddles the
+   * limit is a missing input, not a close call.
+   */
+  readonly unresolved?: string;
   /** Sentences that belong to the figure. */
   readonly remarks: readonly string[];
   /**

@@ -116,13 +116,17 @@ function lengthRemarks(end: EndFacts): string[] {
   if (end.isVirtual && end.kind === 'abrupt') {
     return [`No transition at the ${end.place}: the customary virtual length of ${num(end.lengthM, 1)} m is taken.`];
   }
-  if (end.kind === 'undetermined') {
-    return [
-      `The recording cannot tell a transition at the ${end.place} from none; its length lies between ` +
-        `${num(end.lengthLowM, 0)} and ${num(end.lengthHighM, 0)} m. A faster log, more runs or the track record decide it.`,
-    ];
-  }
   return [];
+}
+
+/** What is missing where the recording cannot tell a transition from none. */
+export function unresolvedLength(end: EndFacts): Pick<Measured, 'unresolved'> {
+  if (end.kind !== 'undetermined') return {};
+  return {
+    unresolved:
+      `the recording does not tell the length of the ${end.place} transition (at most ${num(end.lengthHighM, 0)} m); ` +
+      'the track record, more runs or a faster log decide it',
+  };
 }
 
 export function deficiencyRate(curveCase: CurveCase, limits: LimitSet): Measured | Unmeasured {
@@ -152,6 +156,7 @@ export function deficiencyRate(curveCase: CurveCase, limits: LimitSet): Measured
     formula: `dI/dt = ΔI v / L at the ${end.place}`,
     substituted: () => `${num(changeMm, 1)} mm × ${num(end.fastest.mps, 2)} m/s / ${num(end.lengthM, 1)} m`,
     remarks: lengthRemarks(end),
+    ...unresolvedLength(end),
     speedFor: (limit, sure) => deficiencyRateSpeed(curveCase, end, ratioChange, limit, sure),
     ...(end.kind === 'abrupt'
       ? {}
@@ -202,12 +207,8 @@ export function abruptChange(curveCase: CurveCase, setup: Setup): Measured | Unm
     formula: `ΔI = b v² |Δ(1/R)| / g at the ${end.place}`,
     substituted: () =>
       `${num(baseMm, 0)} mm × ${speedText(end.fastest)} × ${num(Math.abs(end.curvatureChangePerM) * 1000, 4)} /km / ${G}`,
-    remarks:
-      end.kind === 'undetermined'
-        ? [
-            `The recording cannot tell a transition of up to ${num(end.lengthHighM, 0)} m at the ${end.place} from none.`,
-          ]
-        : [],
+    remarks: [],
+    ...unresolvedLength(end),
     speedFor: (limit, sure) => {
       const dk = end.curvatureChangePerM * (sure ? facts.curvatureHighPerM / facts.curvaturePerM : 1);
       return speedForDeficiencyMps(limit, dk, 0, baseMm);
@@ -249,7 +250,8 @@ export function cantRate(curveCase: CurveCase): Measured | Unmeasured {
     ...at(end.fastest),
     formula: `dD/dt = ΔD v / L at the ${end.place}`,
     substituted: () => `${num(changeMm, 0)} mm × ${num(end.fastest.mps, 2)} m/s / ${num(end.lengthM, 1)} m`,
-    remarks: ['Cant is taken to run off along the transition of curvature.', ...lengthRemarks(end)],
+    remarks: ['Cant is taken to run off along the transition of curvature.'],
+    ...unresolvedLength(end),
     speedFor: (limit, sure) => (limit * (sure ? end.lengthLowM : end.lengthM)) / changeMm,
     transitionFor: (limit) => transitionLengthForRateM(changeMm, end.fastest.mps, limit),
   };
@@ -276,7 +278,8 @@ export function cantGradient(curveCase: CurveCase): Measured | Unmeasured {
     ...at(end.fastest),
     formula: `dD/ds = ΔD / L at the ${end.place}`,
     substituted: () => `${num(changeMm, 0)} mm / ${num(end.lengthM, 1)} m`,
-    remarks: ['Cant is taken to run off along the transition of curvature.', ...lengthRemarks(end)],
+    remarks: ['Cant is taken to run off along the transition of curvature.'],
+    ...unresolvedLength(end),
     transitionFor: (limit) => changeMm / limit,
   };
 }
@@ -309,6 +312,7 @@ export function rollRate(curveCase: CurveCase, vehicle: Vehicle): Measured | Unm
       return `(${num(dD, 0)} mm - ${num(s, 2)} × ${num(dI, 1)} mm) × ${num(v, 2)} m/s / (${num(facts.baseMm, 0)} mm × ${num(end.lengthM, 1)} m)`;
     },
     remarks: lengthRemarks(end),
+    ...unresolvedLength(end),
     speedFor: (limit, sure) => {
       const dk = end.curvatureChangePerM * (sure ? facts.curvatureHighPerM / facts.curvaturePerM : 1);
       const length = sure ? end.lengthLowM : end.lengthM;

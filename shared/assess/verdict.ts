@@ -2,6 +2,7 @@ import type { Verdict } from '../schema/common.ts';
 import type { CriterionResult } from '../schema/curve-row.ts';
 import type { CriterionId, Limit } from '../schema/limit-set.ts';
 import type { Setup } from '../schema/setup.ts';
+import type { Unit } from '../units.ts';
 import { mpsToKmh, formatQuantity } from '../units.ts';
 import { roundDownToStep } from '../curving/advisory-speed.ts';
 import { criterionOf } from '../limits/criteria.ts';
@@ -124,6 +125,13 @@ export function judge(found: Measured | Unmeasured, setup: Setup, radiusM: numbe
   }
   const limit = applied.value;
   const verdict = verdictOf(found.low, found.high, limit, sense);
+  if (verdict === 'undecided' && found.unresolved !== undefined) {
+    if (withWorking) {
+      lines.push(limitLine(applied, unit), `Not assessed: ${found.unresolved}.`);
+    }
+    const result = notAssessed(criterion, found.unresolved, found, lines, describeSource(applied.limit));
+    return { result: { ...result, limit }, measured: found, applied };
+  }
   const utilisation = sense === 'most' ? found.value / limit : limit / found.value;
   const { speedStepKmh } = setup.limits;
   const { speedFor, cantFor, transitionFor } = found;
@@ -138,7 +146,7 @@ export function judge(found: Measured | Unmeasured, setup: Setup, radiusM: numbe
   const reason = undecidedReason(verdict, found, limit, cant, setup);
   if (withWorking) {
     lines.push(
-      `Limit (${applied.tier}): ${formatQuantity(limit, unit, limitDecimals(limit))}. Source: ${describeSource(applied.limit)}`,
+      limitLine(applied, unit),
       `Utilisation ${num(utilisation, 3)}: ${verdict}${reason === '' ? '' : `, ${reason}`}.`,
     );
     if (exact !== null && sure !== null && Number.isFinite(exact)) {
@@ -177,6 +185,11 @@ export function judge(found: Measured | Unmeasured, setup: Setup, radiusM: numbe
     reason,
   };
   return { result, measured: found, applied };
+}
+
+function limitLine(applied: AppliedLimit, unit: Unit): string {
+  const value = formatQuantity(applied.value, unit, limitDecimals(applied.value));
+  return `Limit (${applied.tier}): ${value}. Source: ${describeSource(applied.limit)}`;
 }
 
 function limitDecimals(limit: number): number {

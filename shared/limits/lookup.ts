@@ -9,11 +9,14 @@ export interface AppliedLimit {
   readonly limit: Limit;
 }
 
+/** 60 km/h arrives from m/s as 60.00000000000001: bounds hold within this, km/h. */
+const ROUND_OFF_KMH = 1e-9;
+
 /** True when a band holds at a speed (km/h) and radius (m); both its bounds belong to it. */
 function bandApplies(band: LimitBand, speedKmh: number, radiusM: number): boolean {
   return (
-    speedKmh >= (band.minSpeedKmh ?? -Infinity) &&
-    speedKmh <= (band.maxSpeedKmh ?? Infinity) &&
+    speedKmh >= (band.minSpeedKmh ?? -Infinity) - ROUND_OFF_KMH &&
+    speedKmh <= (band.maxSpeedKmh ?? Infinity) + ROUND_OFF_KMH &&
     radiusM >= (band.minRadiusM ?? -Infinity) &&
     radiusM <= (band.maxRadiusM ?? Infinity)
   );

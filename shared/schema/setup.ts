@@ -48,5 +48,7 @@ export const SetupRef = z.object({
   cantRule: CantRule,
   tier: z.enum(['normal', 'exceptional']),
   confidence: z.number().gt(0.5).lt(1),
+  permittedSpeeds: Setup.shape.permittedSpeeds,
+  irregularitiesM: Setup.shape.irregularitiesM,
 });
 export type SetupRef = z.infer<typeof SetupRef>;

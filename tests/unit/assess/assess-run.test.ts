@@ -243,16 +243,23 @@ describe('ends of a curve', () => {
     expect(c.working.join(' ')).toContain('virtual length of 17.5 m');
   });
 
-  it('an undetermined end has an interval from none to its longest transition and says so', () => {
+  it('an end whose length the recording cannot tell is a missing input where the answer hangs on it', () => {
     const end = { kind: 'undetermined' as const, lengthM: { value: 20, sd: 15, low: 0, high: 60 } };
-    const curve = assessOne({ entryM: 20, exitM: 20, entry: end, exit: end, speedMps: 60 / 3.6, radiusM: 300 });
-    const c = criterion(curve, 'abrupt_deficiency_change');
-    expect(c.low).toBe(0);
-    expect(c.verdict).toBe('undecided');
-    expect(c.working.join(' ')).toContain('cannot tell a transition of up to 60 m');
-    const rate = criterion(curve, 'deficiency_rate');
+    const at = (speedMps: number): AssessedCurve =>
+      assessOne(
+        { entryM: 20, exitM: 20, entry: end, exit: end, speedMps, radiusM: 300 },
+        { cantRule: { kind: 'constant', value: 0 } },
+      );
+    const abrupt = criterion(at(60 / 3.6), 'abrupt_deficiency_change');
+    expect(abrupt).toMatchObject({ verdict: 'not assessed', low: 0, limit: 130, utilisation: null });
+    expect(abrupt.reason).toContain('does not tell the length of the entry transition (at most 60 m)');
+    const rate = criterion(at(25 / 3.6), 'deficiency_rate');
     expect(rate.low!).toBeLessThan(rate.value! / 1.5);
     expect(rate.high!).toBeGreaterThan(rate.value!);
+    // 24.6 mm at 25 km/h: even over the bogie distance of 17.5 m the rate is 9.8 mm/s; at 60 km/h even 60 m are too short.
+    expect(rate.verdict).toBe('within');
+    expect(criterion(at(80 / 3.6), 'deficiency_rate').verdict).toBe('over');
+    expect(at(40 / 3.6).row.verdict).toBe('within');
   });
 
   it('a reverse curve adds the neighbour only where there is no ramp between', () => {

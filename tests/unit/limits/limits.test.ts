@@ -72,6 +72,19 @@ describe('limit lookup', () => {
     expect(limitFor(banded, 'cant_deficiency', tier, speed, radius)?.value ?? null).toBe(expected);
   });
 
+  it('a speed that comes back from m/s a hair above a bound still belongs to the band', () => {
+    expect((60 / 3.6) * 3.6).toBeGreaterThan(60);
+    expect(
+      limitFor(
+        set([{ maxSpeedKmh: 60, normal: 130, exceptional: null }]),
+        'cant_deficiency',
+        'normal',
+        (60 / 3.6) * 3.6,
+        300,
+      )?.value,
+    ).toBe(130);
+  });
+
   it('has none for a criterion that the set lacks', () => {
     expect(limitFor(banded, 'jerk', 'normal', 60, 300)).toBeNull();
   });
