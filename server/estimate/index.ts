@@ -150,7 +150,7 @@ function lastPass(observations: Observations, tuned: Tuned, columns: Columns, re
     columns.headingSdRad[i] = Math.sqrt(Math.max(0, c[2]!) + (v * state[5]! * courseLag) ** 2);
     columns.speedSdMps[i] = Math.sqrt(Math.max(0, c[3]!) + (state[4]! * speedLag) ** 2);
     columns.curvatureSdPerM[i] = Math.sqrt(Math.max(0, c[4]!) + (v * state[6]! * courseLag) ** 2);
-    columns.speedCurvatureCorrelation[i] = c[5]! / (columns.speedSdMps[i]! * columns.curvatureSdPerM[i]! + 1e-30);
+    columns.speedCurvatureCorrelation[i] = c[5]! / (columns.speedSdMps[i] * columns.curvatureSdPerM[i] + 1e-30);
   };
   if (smooth(observations, parameters, columns, GATE, sink, report)) return;
   if (!smooth(observations, parameters, null, GATE, sink, report)) throw notFinite();

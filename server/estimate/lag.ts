@@ -186,13 +186,15 @@ function advance(
     while (j > 0 && timeS[j]! > t) j--;
     if (j + 1 >= count || timeS[j]! > t || timeS[j + 1]! - timeS[j]! > LONGEST_STEP_S) continue;
     if ((use[j]! & use[j + 1]! & (bit | USE.STANDING)) === 0) continue;
-    const u = (t - timeS[j]!) / (timeS[j + 1]! - timeS[j]!);
+    const step = timeS[j + 1]! - timeS[j]!;
+    const u = (t - timeS[j]!) / step;
     const from = readings[j]!;
-    const near = (k: number): number => {
-      if (k < 0 || k >= count || (use[k]! & bit) === 0) return NaN;
+    // A neighbour beyond a gap is no neighbour: the spline takes its readings for equally spaced.
+    const near = (k: number, beside: number): number => {
+      if (k < 0 || k >= count || (use[k]! & bit) === 0 || Math.abs(timeS[k]! - timeS[beside]!) > 1.5 * step) return NaN;
       return angular ? from + wrapAngle(readings[k]! - from) : readings[k]!;
     };
-    out[n] = cubic(near(j - 1), from, angular ? near(j + 1) : readings[j + 1]!, near(j + 2), u);
+    out[n] = cubic(near(j - 1, j), from, angular ? near(j + 1, j) : readings[j + 1]!, near(j + 2, j + 1), u);
   }
   return out;
 }

@@ -8,7 +8,7 @@ import {
   subtractOuter,
 } from './covariance-kernels.ts';
 import type { Observations } from './observations.ts';
-import { LEAST_SPEED_FOR_COURSE_MPS, USE, lowSpeedVariance } from './observations.ts';
+import { LEAST_SPEED_FOR_COURSE_MPS, USE, lowSpeedVariance, slowCourseVariance } from './observations.ts';
 import type { Parameters } from './parameters.ts';
 import { ACCELERATION_TIME_S, walkAt } from './parameters.ts';
 import { writeStart } from './start.ts';
@@ -235,11 +235,13 @@ export class MotionFilter {
     const variance = (this.#walk.walk * this.#observations.walkFactor[i]!) / (2 * changeLengthM);
     const jerk = this.#parameters.jerkNoise * this.#observations.jerkFactor[i]!;
     const half = 0.5 * h * h;
+    // Between two fixes of one stop nothing moves, whatever the speed's remaining error.
+    const standing = (this.#observations.use[i]! & this.#observations.use[i - 1]! & USE.STANDING) !== 0;
     f[COEFFICIENT.V_BY_A] = gainA;
     f[COEFFICIENT.DECAY_A] = decayA;
     f[COEFFICIENT.DECAY_DOPPLER] = decayDoppler;
     for (let step = 0; step < steps; step++) {
-      const d = Math.max(0, v * h + 0.5 * a * h * h);
+      const d = standing ? 0 : Math.max(0, v * h + 0.5 * a * h * h);
       const x = d / changeLengthM;
       const decayC = Math.exp(-x);
       // First and second integral over d of a decaying c.
@@ -423,7 +425,8 @@ export class MotionFilter {
       const measured = (use & USE.SPEED) !== 0 ? o.speedMps![i]! : state[3]!;
       const v = Math.max(LEAST_SPEED_FOR_COURSE_MPS, reference === null ? measured : reference.speedMps[i]!);
       const slow = 1 / v;
-      const noise = courseWhiteMps * courseWhiteMps * o.dopplerFactor[i]! * slow * slow + o.courseRoundingRad2;
+      const white = courseWhiteMps * courseWhiteMps * o.dopplerFactor[i]! + slowCourseVariance(v);
+      const noise = white * slow * slow + o.courseRoundingRad2;
       columnCourse(p, slow, g);
       const variance = g[2]! + slow * g[7]! + noise;
       const innovation = wrapAngle(o.northRad[i]! - o.courseRad![i]! - state[2]! - slow * state[7]!);

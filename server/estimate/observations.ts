@@ -16,6 +16,9 @@ export const USE = {
 export const LEAST_SPEED_FOR_COURSE_MPS = 1.2;
 /** Below this speed a receiver's speed is the norm of noise, m/s. */
 const LEAST_MEANINGFUL_SPEED_MPS = 0.3;
+/** Below this speed a course may still be held or filtered by the receiver, with this error, m/s. */
+const SLOW_COURSE_MPS = 2.5;
+const SLOW_COURSE_SD_MPS = 0.3;
 /** Variance factor of a fix that the receiver itself marks as weak. */
 const WEAK_FACTOR = 9;
 /** Stated accuracies worse than the log's median enlarge the variance up to this factor. */
@@ -144,4 +147,12 @@ export function subset(source: Observations, indices: readonly number[], restart
 /** Extra variance of a speed reading so low that it is the norm of noise, (m/s)^2. */
 export function lowSpeedVariance(speedMps: number): number {
   return speedMps < 2 * LEAST_MEANINGFUL_SPEED_MPS ? LEAST_MEANINGFUL_SPEED_MPS ** 2 / 2 : 0;
+}
+
+/**
+ * Extra variance of a course taken at little speed, (m/s)^2: receivers hold or filter their course when a vehicle pulls away
+ * (common practice, no source).
+ */
+export function slowCourseVariance(speedMps: number): number {
+  return speedMps < SLOW_COURSE_MPS ? SLOW_COURSE_SD_MPS ** 2 : 0;
 }
