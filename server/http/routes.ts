@@ -31,14 +31,14 @@ import { loadDemo } from './demo.ts';
 import { streamEvents } from './events.ts';
 import { notFound } from './faults.ts';
 import { openApiDocument } from './openapi.ts';
-import { profileWindow } from './profile-window.ts';
+import { MOST_POINTS, profileWindow } from './profile-window.ts';
 import { dropUploads, keepUploads, plainName, uploadReceiver } from './uploads.ts';
 import { wire } from './wire.ts';
 
 const WindowQuery = z.object({
   from: z.coerce.number().default(-Infinity),
   to: z.coerce.number().default(Infinity),
-  points: z.coerce.number().int().min(2).max(20_000).default(2000),
+  points: z.coerce.number().int().min(2).max(MOST_POINTS).default(2000),
 });
 
 /** All routes under /api. */
