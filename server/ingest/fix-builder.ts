@@ -37,18 +37,24 @@ export class FixBuilder {
   count = 0;
   readonly #file: string;
   readonly #maxFixes: number;
-  #capacity = 1024;
-  #utcS = new Float64Array(this.#capacity);
-  #latDeg = new Float64Array(this.#capacity);
-  #lonDeg = new Float64Array(this.#capacity);
-  #segment = new Uint32Array(this.#capacity);
-  #row = new Uint32Array(this.#capacity);
+  #capacity: number;
+  #utcS: Float64Array;
+  #latDeg: Float64Array;
+  #lonDeg: Float64Array;
+  #segment: Uint32Array;
+  #row: Uint32Array;
   readonly #floats = new Map<FloatChannel, Float32Array>();
   readonly #bytes = new Map<ByteChannel, Uint8Array>();
 
   constructor(file: string, maxFixes: number) {
     this.#file = file;
     this.#maxFixes = maxFixes;
+    this.#capacity = Math.min(1024, maxFixes);
+    this.#utcS = new Float64Array(this.#capacity);
+    this.#latDeg = new Float64Array(this.#capacity);
+    this.#lonDeg = new Float64Array(this.#capacity);
+    this.#segment = new Uint32Array(this.#capacity);
+    this.#row = new Uint32Array(this.#capacity);
   }
 
   /** Appends a fix; its channels follow by `set`. Throws `ingest/too-many-points` beyond the limit. */

@@ -54,6 +54,7 @@ class NmeaReader {
   #lat = NaN;
   #lon = NaN;
   #isVoid = false;
+  #isBad = false;
   #speed = NaN;
   #course = NaN;
   #elevation = NaN;
@@ -264,10 +265,19 @@ class NmeaReader {
         );
       }
     } else if (this.#isVoid) this.#voids++;
+    else if (this.#isBad) {
+      this.log.note(
+        'bad-position',
+        'warning',
+        (n) => `${counted(n, 'fix', 'fixes')} with a position that cannot be left out`,
+        { file: this.#file, line: this.#row },
+        1,
+      );
+    }
     this.#lat = this.#lon = this.#speed = this.#course = this.#elevation = this.#hdop = this.#accuracy = NaN;
     this.#day = NaN;
     this.#satellites = this.#quality = 255;
-    this.#isVoid = false;
+    this.#isVoid = this.#isBad = false;
   }
 
   /** Takes over the date of the open fix, and dates what came before the first. */
@@ -373,7 +383,7 @@ class NmeaReader {
       this.#lat = ns === 83 ? -lat : lat;
       this.#lon = ew === 87 ? -lon : lon;
     } else if (this.#starts[field + 1]! - 1 > this.#starts[field]!) {
-      this.#bad('bad-position', (n) => `${counted(n, 'sentence')} with a position that cannot be`);
+      this.#isBad = true;
     }
   }
 

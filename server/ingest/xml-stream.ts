@@ -6,6 +6,8 @@ import { textChunks, type TextNote } from './encoding.ts';
 const MAX_DEPTH = 64;
 /** Longest text of one element that is kept; more is cut. */
 const MAX_TEXT = 1 << 16;
+/** Characters of the longest entity, ampersand and semicolon included. */
+const LONGEST_ENTITY = 34;
 /** Damaged places after which the rest of a file is given up. */
 const MAX_DAMAGES = 1000;
 
@@ -135,10 +137,17 @@ export async function readXml(
       }
     }
   };
+  let held = '';
   for await (const chunk of textChunks(source, note)) {
-    feed(chunk);
+    const whole = held + chunk;
+    // An entity may be cut by the end of the chunk.
+    const last = whole.lastIndexOf('&');
+    const end = last >= 0 && whole.length - last < LONGEST_ENTITY ? last : whole.length;
+    held = whole.slice(end);
+    feed(escapeStray(whole.slice(0, end)));
     if (givenUp !== null) break;
   }
+  if (givenUp === null) feed(escapeStray(held));
   let cutOff = false;
   if (givenUp === null && !skipping) {
     try {
@@ -153,6 +162,14 @@ export async function readXml(
 }
 
 class XmlStop extends Error {}
+
+/**
+ * Escapes ampersands that begin no entity: the parser would take all text up to the next semicolon, maybe the rest of
+ * the file, for the name of one.
+ */
+function escapeStray(text: string): string {
+  return text.includes('&') ? text.replace(/&(?!#?\w{1,30};)/g, '&amp;') : text;
+}
 
 function countNewlines(text: string, from: number, to: number): number {
   let count = 0;

@@ -53,8 +53,10 @@ function sentence(body: string): string {
 }
 
 function angle(degrees: number, width: number): string {
-  const whole = Math.floor(Math.abs(degrees));
-  return `${String(whole).padStart(width, '0')}${((Math.abs(degrees) - whole) * 60).toFixed(5).padStart(8, '0')}`;
+  // Rounded before it is split, so that no minute reads 60.
+  const minutes = Math.round(Math.abs(degrees) * 60e5) / 1e5;
+  const whole = Math.floor(minutes / 60);
+  return `${String(whole).padStart(width, '0')}${(minutes - 60 * whole).toFixed(5).padStart(8, '0')}`;
 }
 
 export function nmeaText(points: number): string {

@@ -132,7 +132,9 @@ export function planColumns(lines: readonly string[], columns: ColumnNames, file
       }
     }
     const shown = isTime ? timeUnit(time, choice.column) || timeUnit(sensorTime, choice.column) : unit;
-    uses[choice.column] = { header: headers[choice.column]!, field, unit: shown, guessed };
+    // A column headed "time" or "date" may hold both.
+    const fed = isTime && time.kind !== 'pair' ? 'utcS' : field;
+    uses[choice.column] = { header: headers[choice.column]!, field: fed, unit: shown, guessed };
     if (!isTime && !NOT_CHANNELS.has(field)) {
       channels.push({ field, column: choice.column, unit, factor: factorOf(unit) });
     }
@@ -249,7 +251,10 @@ function judgeAngles(
   if ((lat > 180 || lon > 360 || (hemispheres && lat > 90)) && lat < 9060 && lon < 18060) {
     if (minutesFit(latitudes) && minutesFit(longitudes)) return { form: 'degrees-minutes', swapped: false };
   }
-  return { form: 'degrees', swapped: lat > 90 && lat <= 180 && lon <= 90 };
+  // All of them, but for a false one here and there, beyond 90° under "latitude" and none under "longitude".
+  const beyond = (texts: readonly string[]) =>
+    texts.filter((text) => Math.abs(decimal(text.replace(',', '.'))) > 90).length / Math.max(1, texts.length);
+  return { form: 'degrees', swapped: beyond(latitudes) > 0.9 && lat <= 180 && beyond(longitudes) === 0 };
 }
 
 function timeUnit(time: TimeForm | null, column: number): string {
