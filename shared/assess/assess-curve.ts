@@ -183,7 +183,8 @@ const LEFT_OF_SWING = 0.1;
 
 /**
  * Speed nearest to the recorded one at which entry and exit excite the roll together: changes of opposite sign add when
- * they lie an odd number of half damped periods apart, v = 2 f_d d / (2 n + 1). Null when the entry's swing has died out
+ * they lie an odd number of half damped periods apart, v = 2 f_d d / (2 n + 1). Null when the entry's swing has died
+ * out
  * by then, or no natural frequency is known. Source: superposition of two responses, common practice, no source.
  */
 function worstRollSpeedKmh(curveCase: CurveCase, setup: Setup): number | null {

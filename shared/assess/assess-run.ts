@@ -9,7 +9,8 @@ import { cautionsFor } from './cautions.ts';
 
 export interface AssessOptions {
   /**
-   * Curves whose criteria get their working lines: all (true, the default), none, or those numbered. Figures are the same
+   * Curves whose criteria get their working lines: all (true, the default), none, or those numbered. Figures are the
+   * same
    * either way; without the lines a line of 500 curves recomputes within a frame or two.
    */
   readonly working?: boolean | readonly number[];
@@ -23,7 +24,8 @@ export interface RunAssessment {
 
 /**
  * Verdicts for every curve of a run under a setup: the one function behind table, sheet, trials and exports.
- * Pure and quick enough for a page to call on every move of a slider. Never throws for measured data; what is missing makes
+ * Pure and quick enough for a page to call on every move of a slider. Never throws for measured data; what is missing
+ * makes
  * a criterion `not assessed` with its reason.
  */
 export function assessRun(passages: RunPassages, setup: Setup, options: AssessOptions = {}): RunAssessment {

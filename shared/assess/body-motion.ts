@@ -35,7 +35,9 @@ const GRID_S = 0.1;
 /** Speed taken at a start or stop within a passage, m/s. */
 const SLOWEST_MPS = 1;
 
-/** Curvature in favour of the curve and cant ratio at a chainage, from the fitted geometry with effective transitions. */
+/**
+ * Curvature in favour of the curve and cant ratio at a chainage, from the fitted geometry with effective transitions.
+ */
 interface Shape {
   readonly s: readonly [number, number, number, number];
   readonly curvature: readonly [number, number, number];
@@ -61,7 +63,10 @@ function shapeOf(facts: CurveFacts, cantRatio: number, cantRatioBefore: number, 
   };
 }
 
-/** Columns of the nodes, kept between calls: a page assesses hundreds of curves a second and they need not be made anew. */
+/**
+ * Columns of the nodes, kept between calls: a page assesses hundreds of curves a second and they need not be made
+ * anew.
+ */
 interface Nodes {
   t: Float64Array;
   s: Float64Array;
@@ -89,11 +94,17 @@ function makeNodes(size: number): Nodes {
   };
 }
 
-/** Bounds the work on a passage with a crawl: more nodes than this are not laid, and the rest of the passage is left out. */
+/**
+ * Bounds the work on a passage with a crawl: more nodes than this are not laid, and the rest of the passage is left
+ * out.
+ */
 const MOST_NODES = 16_384;
 const scratch = makeNodes(MOST_NODES);
 
-/** Lays nodes of time, chainage and speed through the passage, with every junction and steps short against the roll's period. */
+/**
+ * Lays nodes of time, chainage and speed through the passage, with every junction and steps short against the roll's
+ * period.
+ */
 function layNodes(facts: CurveFacts, shape: Shape, stepS: number, into: Nodes): void {
   const { chainageM, speedMps } = facts.passage;
   const { t, s, v } = into;
@@ -145,8 +156,10 @@ function layNodes(facts: CurveFacts, shape: Shape, stepS: number, into: Nodes): 
  *
  * cantRatio: sin of the cant angle on the curve; before/after: on the far sides of its ends.
  * speedScale multiplies the measured speed (for advice).
- * Windows: 1 s centred means; acceleration from the start of the entry transition to 1.6 s after its end; its change over
- * 1 s from 1 s before the start to the end; roll velocity within the transition. EN 12299:2009 (from memory). The standard's
+ * Windows: 1 s centred means; acceleration from the start of the entry transition to 1.6 s after its end; its change
+ * over
+ * 1 s from 1 s before the start to the end; roll velocity within the transition. EN 12299:2009 (from memory). The
+ * standard's
  * 2 Hz low pass is not applied: the fitted geometry holds nothing above it.
  * At a start or stop within the passage the speed is taken as at least 1 m/s.
  */

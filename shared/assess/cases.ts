@@ -18,7 +18,8 @@ export function curveCases(run: RunPassages, setup: Setup): { cases: CurveCase[]
     const facts = curveFacts(passage, setup);
     const cant = cants[i]!;
     const own = ratioOf(cant, mode, baseMm);
-    // Beyond a straight or a reverse point cant is zero; a neighbour of the same hand keeps its own, or this one's if unknown.
+    // Beyond a straight or a reverse point cant is zero; a neighbour of the same hand keeps its own, or this one's if
+    // unknown.
     const beyond = facts.ends.map((end) => {
       if (end.sameHandNeighbour === null) return 0;
       const index = indexOf.get(end.sameHandNeighbour);

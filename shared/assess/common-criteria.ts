@@ -141,7 +141,10 @@ export function jerk(curveCase: CurveCase): Measured | Unmeasured {
   };
 }
 
-/** The station where the speed stands worst against the permitted speed of the line, with that speed; null without one here. */
+/**
+ * The station where the speed stands worst against the permitted speed of the line, with that speed; null without one
+ * here.
+ */
 function againstPermitted(curveCase: CurveCase, setup: Setup): { index: number; permittedKmh: number } | null {
   const { chainageM, speedMps } = curveCase.facts.passage;
   let worst: { index: number; permittedKmh: number } | null = null;

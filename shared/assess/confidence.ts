@@ -13,7 +13,8 @@ export interface Interval {
 /**
  * Quantile z of a two-sided interval of the given confidence, for example 1.95996 for 0.95.
  * Rational approximation of the normal quantile, relative error below 1.2e-9.
- * Errors: RangeError outside (0, 1). Source: P. J. Acklam's coefficients (from memory; checked against the error function in a test).
+ * Errors: RangeError outside (0, 1). Source: P. J. Acklam's coefficients (from memory; checked against the error
+ * function in a test).
  */
 export function twoSidedQuantile(confidence: number): number {
   if (!(confidence > 0 && confidence < 1))

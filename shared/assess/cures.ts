@@ -10,7 +10,10 @@ import { num } from './text.ts';
 
 /** Figures that more cant, a longer transition or a lower speed must reach for every criterion at once. */
 export interface Needs {
-  /** Highest speed that complies with every criterion at the chosen confidence, km/h; null when no criterion gives one. */
+  /**
+   * Highest speed that complies with every criterion at the chosen confidence, km/h; null when no criterion gives
+   * one.
+   */
   readonly speedKmh: number | null;
   /** Least cant, mm; null when cant cures nothing here. */
   readonly cantMm: number | null;
@@ -18,7 +21,8 @@ export interface Needs {
 }
 
 /**
- * Speed that a criterion allows at the chosen confidence, km/h. A criterion that is within at the recorded speed allows at least that
+ * Speed that a criterion allows at the chosen confidence, km/h. A criterion that is within at the recorded speed
+ * allows at least that
  * (in whole steps): the interval of a passage is narrower than that of a speed never driven.
  */
 function speedOf({ result, measured }: Judged, stepKmh: number): number | null {
@@ -93,7 +97,8 @@ function notCured(others: readonly string[]): string {
 }
 
 /**
- * The cures of a curve that is not within its limits: speed, cant and transition, each with what stands against it. Empty for a curve that is
+ * The cures of a curve that is not within its limits: speed, cant and transition, each with what stands against it.
+ * Empty for a curve that is
  * within, or that nothing can be said of.
  */
 export function curesOf(

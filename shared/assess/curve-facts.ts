@@ -41,7 +41,9 @@ export interface CurveFacts {
   /** |curvature|, 1/m, best, and at the ends of its own interval. */
   readonly curvaturePerM: number;
   readonly curvatureHighPerM: number;
-  /** |curvature| scaled so that v^2 kappa at the measured speed lies at the ends of ITS interval (speed enters once). */
+  /**
+   * |curvature| scaled so that v^2 kappa at the measured speed lies at the ends of ITS interval (speed enters once).
+   */
   readonly lateralLowPerM: number;
   readonly lateralHighPerM: number;
   readonly radiusM: number;

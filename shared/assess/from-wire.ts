@@ -15,7 +15,8 @@ function end(wire: WireCurve['entry']): RunPassages['passages'][number]['curve']
 }
 
 /**
- * Passages as the assessment takes them from passages as JSON brings them: an upper end that is null there is unbounded, a fit quality
+ * Passages as the assessment takes them from passages as JSON brings them: an upper end that is null there is
+ * unbounded, a fit quality
  * that is null is not applicable. Without this an unbounded interval would be taken for a narrow one.
  */
 export function passagesFromWire(wire: Wire): RunPassages {

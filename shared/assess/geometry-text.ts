@@ -10,7 +10,8 @@ import { num, radiusText } from './text.ts';
 const SHORTEST_CLOTHOID_M = 1;
 
 /**
- * Geometry of a curve as lines of its sheet: radius with its 95 % interval, degree of curve by both definitions, versine on a chosen
+ * Geometry of a curve as lines of its sheet: radius with its 95 % interval, degree of curve by both definitions,
+ * versine on a chosen
  * chord, deflection and long chord, and the clothoids of its transitions.
  * chordM: the chord that the line's people measure versines on, m.
  */

@@ -24,7 +24,10 @@ export function ratioOf(cant: CurveCant, mode: Mode, baseMm: number): number {
   return cant.mm === null ? 0 : Math.sin(cantAngleRad(cant.mm, baseMm));
 }
 
-/** Interval of a figure that depends on the lateral acceleration alone; `at` gives it for a |curvature| at the measured speed. */
+/**
+ * Interval of a figure that depends on the lateral acceleration alone; `at` gives it for a |curvature| at the
+ * measured speed.
+ */
 export function lateralInterval(facts: CurveFacts, isBound: boolean, at: (curvaturePerM: number) => number): Interval {
   const value = at(facts.curvaturePerM);
   const a = at(facts.lateralLowPerM);
@@ -58,7 +61,10 @@ export function cantRatioChange(curveCase: CurveCase, index: 0 | 1): number {
   return end.kind === 'abrupt' ? 0 : curveCase.cantRatio - curveCase.beyondRatio[index];
 }
 
-/** Change over an end of the acceleration in the plane of track or road, small angles: v^2 dkappa - g d(sin theta), m/s^2. */
+/**
+ * Change over an end of the acceleration in the plane of track or road, small angles: v^2 dkappa - g d(sin theta),
+ * m/s^2.
+ */
 export function planeChangeMps2(speedMps: number, curvatureChangePerM: number, ratioChange: number): number {
   return speedMps * speedMps * curvatureChangePerM - STANDARD_GRAVITY_MPS2 * ratioChange;
 }

@@ -25,7 +25,10 @@ export interface LineAdvice {
   readonly permittedMps: Float64Array;
   /** The recorded run slowed so that it obeys everywhere, with the vehicle's braking and acceleration, m/s. */
   readonly drivenMps: Float64Array;
-  /** Running time lost against the recorded run, all curves together, s. Less than the sum when curves share a braking. */
+  /**
+   * Running time lost against the recorded run, all curves together, s. Less than the sum when curves share a
+   * braking.
+   */
   readonly lostS: number;
   /** Curves that are to be slowed for, those first that buy the most comfort for the least time. */
   readonly order: readonly CurveAdvice[];
@@ -69,7 +72,10 @@ function slowed(stations: Stations, permitted: Float64Array, setup: Setup): Floa
   return envelope.map((v, i) => Math.min(v, stations.speedMps[i]!));
 }
 
-/** Time lost when one stretch alone is obeyed: only the stations within braking and accelerating distance of it are looked at. */
+/**
+ * Time lost when one stretch alone is obeyed: only the stations within braking and accelerating distance of it are
+ * looked at.
+ */
 function lostAloneS(profile: ProfileInput, stretch: SlowStretch, topMps: number, setup: Setup): number {
   const { accelerationMps2, brakingMps2 } = setup.vehicle;
   const square = topMps * topMps;
@@ -80,8 +86,10 @@ function lostAloneS(profile: ProfileInput, stretch: SlowStretch, topMps: number,
 }
 
 /**
- * Advice for the line: the recorded run slowed where, and only where, a curve is over or undecided, so that it complies with
- * all criteria at the chosen confidence; what that costs, curve by curve and in total; and the order in which curves buy the most comfort
+ * Advice for the line: the recorded run slowed where, and only where, a curve is over or undecided, so that it
+ * complies with
+ * all criteria at the chosen confidence; what that costs, curve by curve and in total; and the order in which curves
+ * buy the most comfort
  * for the least time. A curve within its limits keeps its recorded speed. The advice never runs faster than recorded.
  */
 export function adviseLine(profile: ProfileInput, passages: RunPassages, setup: Setup): LineAdvice {

@@ -15,14 +15,16 @@ export interface Measured extends Interval {
   /** A limit that comes with the place rather than with the set: the permitted speed of the line. */
   readonly placeLimit?: Limit;
   /**
-   * Set when the recording cannot tell the length of the transition that the figure rests on: an interval that then straddles the
+   * Set when the recording cannot tell the length of the transition that the figure rests on: an interval that then
+   * straddles the
    * limit is a missing input, not a close call.
    */
   readonly unresolved?: string;
   /** Sentences that belong to the figure. */
   readonly remarks: readonly string[];
   /**
-   * Highest speed that just meets a limit, m/s; absent when no slower speed cures. `sure`: at the unfavourable end of the geometry's
+   * Highest speed that just meets a limit, m/s; absent when no slower speed cures. `sure`: at the unfavourable end of
+   * the geometry's
    * interval instead of its best estimate.
    */
   readonly speedFor?: (limit: number, sure: boolean) => number;

@@ -2,7 +2,8 @@ import type { Profile } from '../model/motion.ts';
 import { lateralMotionDose } from '../curving/motion-sickness.ts';
 
 /**
- * Motion dose of a run from its lateral body acceleration, m/s^1.5: a relative indicator to compare runs and vehicles, not a forecast of
+ * Motion dose of a run from its lateral body acceleration, m/s^1.5: a relative indicator to compare runs and
+ * vehicles, not a forecast of
  * sickness. timeS: seconds at each station; body: lateralBodyMps2 of the profile's assessment.
  * Steps of time that do not advance (a standstill folded into one station) are passed over.
  */

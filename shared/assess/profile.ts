@@ -33,7 +33,10 @@ export interface ProfileAssessment {
   readonly count: number;
   /** Cant in favour of the curve, mm (road: superelevation, percent); 0 on straights; NaN where unknown. */
   readonly cantMm: Float32Array;
-  /** Track-plane lateral acceleration by the fitted alignment; positive pushes to the right, as curvature to the left does. */
+  /**
+   * Track-plane lateral acceleration by the fitted alignment; positive pushes to the right, as curvature to the left
+   * does.
+   */
   readonly lateralTrackMps2: Float32Array;
   readonly lateralTrackSdMps2: Float32Array;
   readonly lateralBodyMps2: Float32Array;
@@ -71,7 +74,8 @@ const OF_ENDS = new Set<CriterionId>([
 ]);
 
 /**
- * Assessment along a run at the stations of its profile: the columns that bands, map and the profile export show. Figures come from
+ * Assessment along a run at the stations of its profile: the columns that bands, map and the profile export show.
+ * Figures come from
  * the fitted alignment and the smoothed speed, as the verdicts do; standard deviations from the smoother.
  */
 export function assessProfile(profile: ProfileInput, passages: RunPassages, setup: Setup): ProfileAssessment {
@@ -125,7 +129,10 @@ export function assessProfile(profile: ProfileInput, passages: RunPassages, setu
   return out;
 }
 
-/** Cant along a curve: full on the arc, in proportion to curvature on its ends; NaN where unknown (ratio then stays zero). */
+/**
+ * Cant along a curve: full on the arc, in proportion to curvature on its ends; NaN where unknown (ratio then stays
+ * zero).
+ */
 function layCant(
   curveCase: CurveCase,
   chainageM: ArrayLike<number>,

@@ -217,7 +217,10 @@ export function abruptChange(curveCase: CurveCase, setup: Setup): Measured | Unm
   };
 }
 
-/** What would take an abrupt change away is a transition long enough for the set's own rate of deficiency, where it has one. */
+/**
+ * What would take an abrupt change away is a transition long enough for the set's own rate of deficiency, where it
+ * has one.
+ */
 function transitionInstead(
   setup: Setup,
   speedMps: number,
@@ -323,7 +326,8 @@ export function rollRate(curveCase: CurveCase, vehicle: Vehicle): Measured | Unm
 }
 
 /**
- * Lowest speed at which a figure, 0 at standstill, first reaches its limit: scanned upwards in steps of 0.5 m/s to three
+ * Lowest speed at which a figure, 0 at standstill, first reaches its limit: scanned upwards in steps of 0.5 m/s to
+ * three
  * times the recorded speed (Infinity when never reached), then halved to 1 mm/s.
  */
 export function largestBelow(figure: (speedMps: number) => number, limit: number, recordedMps: number): number {

@@ -27,8 +27,10 @@ function avoidText(criticalMps: number, dampingRatio: number): string {
 }
 
 /**
- * Where the excitation met the roll's natural frequency on this run: irregularities at the spacings that the setup names, and
- * rows of at least three reverse curves. Each finding says the speeds to avoid. Empty when the vehicle's frequency or damping is not
+ * Where the excitation met the roll's natural frequency on this run: irregularities at the spacings that the setup
+ * names, and
+ * rows of at least three reverse curves. Each finding says the speeds to avoid. Empty when the vehicle's frequency or
+ * damping is not
  * known: a scenario needs both.
  */
 export function resonanceFindings(profile: ProfileInput, passages: RunPassages, setup: Setup): Finding[] {

@@ -13,8 +13,10 @@ export function timeAlongS(chainageM: ArrayLike<number>, speedMps: ArrayLike<num
 }
 
 /**
- * Running time that passing one curve at no more than `limitMps` costs, s: inside the curve from station to station, outside
- * by braking from and accelerating back to the speeds recorded at its ends with the vehicle's rates. What the neighbouring
+ * Running time that passing one curve at no more than `limitMps` costs, s: inside the curve from station to station,
+ * outside
+ * by braking from and accelerating back to the speeds recorded at its ends with the vehicle's rates. What the
+ * neighbouring
  * curves cost is not shared out here; the line's advice does that.
  */
 export function slowerCurveCostS(passage: Passage, limitMps: number, vehicle: Vehicle): number {

@@ -23,8 +23,10 @@ export function verdictOf(low: number | null, high: number, limit: number, sense
 }
 
 /**
- * Highest speed, km/h, that meets a criterion's limit, bands of speed included: in each band of the set that holds for the
- * radius the speed that the band's value allows, capped to the band. Unrounded; Infinity when nothing limits; null when no
+ * Highest speed, km/h, that meets a criterion's limit, bands of speed included: in each band of the set that holds
+ * for the
+ * radius the speed that the band's value allows, capped to the band. Unrounded; Infinity when nothing limits; null
+ * when no
  * band gives an answer.
  */
 export function complyingKmh(

@@ -1,13 +1,18 @@
 import type { Passage } from '../model/passage.ts';
 import { timeAlongS } from './running-time.ts';
 
-/** Wander of satellite heights: standard deviation, m, and correlation time, s (from memory; half as much again as across, open sky). */
+/**
+ * Wander of satellite heights: standard deviation, m, and correlation time, s (from memory; half as much again as
+ * across, open sky).
+ */
 const WANDER_SD_M = 5;
 const WANDER_TIME_S = 100;
 
 /**
- * Vertical curvature of a passage, second derivative of height by chainage, 1/m, with its standard deviation: a parabola by
- * least squares through the elevations. The deviation adds the residuals' share and that of the slow wander of satellite
+ * Vertical curvature of a passage, second derivative of height by chainage, 1/m, with its standard deviation: a
+ * parabola by
+ * least squares through the elevations. The deviation adds the residuals' share and that of the slow wander of
+ * satellite
  * heights, which bends a short passage without showing in the residuals.
  * Null below 8 elevations or 60 m, where a parabola says nothing.
  */
@@ -58,7 +63,8 @@ export function verticalCurvature(passage: Passage): { curvaturePerM: number; sd
   const variance = residual / (n - 3);
   const coefficientVariance = (variance * (s0 * s2 - s1 * s1)) / det;
   const toCurvature = 8 / (length * length);
-  // Over a passage the wander is a random walk; the parabola's coefficient of a Brownian path with end-to-end deviation D
+  // Over a passage the wander is a random walk; the parabola's coefficient of a Brownian path with end-to-end
+  // deviation D
   // has deviation 0.5175 D (integral of the squared primitive of the second Legendre polynomial).
   const duration = timeAlongS(passage.chainageM, passage.speedMps);
   const wander = 0.5175 * WANDER_SD_M * Math.sqrt((2 * Math.min(duration, WANDER_TIME_S)) / WANDER_TIME_S);

@@ -9,7 +9,10 @@ export interface ArcElements {
   readonly externalM: number;
 }
 
-/** arc R d, tangent R tan(d/2), chord 2R sin(d/2), versine R(1 - cos(d/2)), external R(sec(d/2) - 1). Source: geometry. */
+/**
+ * arc R d, tangent R tan(d/2), chord 2R sin(d/2), versine R(1 - cos(d/2)), external R(sec(d/2) - 1). Source:
+ * geometry.
+ */
 export function arcElements(radiusM: number, deflectionRad: number): ArcElements {
   const half = deflectionRad / 2;
   return {

@@ -22,7 +22,8 @@ export function clothoid(lengthM: number, radiusM: number): Clothoid {
   const tau = lengthM / (2 * radiusM);
   let x = 0;
   let y = 0;
-  // term_n = tau^n / n!, integrated over s: L tau^n / (n! (2 n + 1)); even n feed x, odd n feed y, with alternating signs.
+  // term_n = tau^n / n!, integrated over s: L tau^n / (n! (2 n + 1)); even n feed x, odd n feed y, with alternating
+  // signs.
   let power = 1;
   for (let n = 0; n < 60; n++) {
     const term = (power * lengthM) / (2 * n + 1);

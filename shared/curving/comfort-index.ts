@@ -15,7 +15,8 @@ const DISCRETE_EVENT = {
  * Comfort index of a curve transition, percent of passengers dissatisfied:
  * P_CT = max(A a + B j - C, 0) + D r^E, at most 100.
  *
- * bodyMps2: largest lateral body acceleration, 1 s mean, from the start of the transition to 1.6 s after its end, m/s^2;
+ * bodyMps2: largest lateral body acceleration, 1 s mean, from the start of the transition to 1.6 s after its end,
+ * m/s^2;
  * jerkMps3: its largest change over 1 s, m/s^3; rollDegS: largest 1 s mean roll velocity within the transition, deg/s.
  * Units trap: the standard prints the roll term as 100 (D w)^E with w in rad/s and D = 3.64 / 0.916; the D used here
  * goes with deg/s.

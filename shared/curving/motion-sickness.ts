@@ -1,5 +1,6 @@
 /**
- * Weighting Wf of motion sickness, magnitude at a frequency (Hz): band limits 0.08 and 0.63 Hz (Butterworth), transition at
+ * Weighting Wf of motion sickness, magnitude at a frequency (Hz): band limits 0.08 and 0.63 Hz (Butterworth),
+ * transition at
  * 0.25 Hz (Q 0.86), upward step 0.0625 to 0.1 Hz (Q 0.8).
  * Source: ISO 2631-1:1997 / ISO 8041-1:2017 (parameters and table read in transcription).
  */
@@ -71,9 +72,11 @@ const STEP_S = 0.125;
 /**
  * Motion sickness dose MSDV = sqrt(integral of a_w^2 dt), m/s^1.5, of a lateral acceleration weighted by Wf.
  *
- * timeS: s, strictly increasing; accelerationMps2 of the same length, linear between; NaN is taken as 0 (nothing felt is
+ * timeS: s, strictly increasing; accelerationMps2 of the same length, linear between; NaN is taken as 0 (nothing felt
+ * is
  * known), so that a gap neither adds nor invents dose.
- * Wf and the dose are standardised for VERTICAL motion; lateral use is research practice: show it as a relative indicator only,
+ * Wf and the dose are standardised for VERTICAL motion; lateral use is research practice: show it as a relative
+ * indicator only,
  * never as a share of passengers.
  * Source: ISO 2631-1:1997, clause 9 (from memory).
  */

@@ -1,6 +1,9 @@
 import { STANDARD_GRAVITY_MPS2 } from '../units.ts';
 
-/** Undamped natural frequency from stiffness and mass (or rotational stiffness and inertia): sqrt(k/m)/(2 pi), Hz. Common practice, no source. */
+/**
+ * Undamped natural frequency from stiffness and mass (or rotational stiffness and inertia): sqrt(k/m)/(2 pi), Hz.
+ * Common practice, no source.
+ */
 export function naturalFrequencyHz(stiffness: number, mass: number): number {
   return Math.sqrt(stiffness / mass) / (2 * Math.PI);
 }

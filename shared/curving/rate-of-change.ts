@@ -11,7 +11,10 @@ export function rateOfChange(change: number, speedMps: number, lengthM: number):
   return (change * speedMps) / lengthM;
 }
 
-/** Length at which a change takes place at just the rate `limit` (same unit per second), m. Source: inverse of rateOfChange. */
+/**
+ * Length at which a change takes place at just the rate `limit` (same unit per second), m. Source: inverse of
+ * rateOfChange.
+ */
 export function transitionLengthForRateM(change: number, speedMps: number, limit: number): number {
   return (Math.abs(change) * speedMps) / limit;
 }

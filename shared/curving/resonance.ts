@@ -3,7 +3,8 @@ import { driveRatioOfPeak } from './roll-oscillator.ts';
 /**
  * Speed at which excitations repeated every `spacingM` meet the driven peak of the roll:
  * v = lambda f0 sqrt(1 - 2 zeta^2) / k, k the harmonic (1 for the fundamental), m/s.
- * 0 when the damping leaves no peak. Source: f = v / lambda; joint spacing as excitation (read: rail joints and rock-off).
+ * 0 when the damping leaves no peak. Source: f = v / lambda; joint spacing as excitation (read: rail joints and rock-
+ * off).
  */
 export function criticalSpeedMps(spacingM: number, frequencyHz: number, dampingRatio: number, harmonic = 1): number {
   return (spacingM * frequencyHz * driveRatioOfPeak(dampingRatio)) / harmonic;
@@ -20,7 +21,8 @@ export interface ResonantStretch {
 }
 
 /**
- * Half-power band of an oscillator, as ratios of frequency to its natural frequency: 1 -/+ zeta, never narrower than 5 %,
+ * Half-power band of an oscillator, as ratios of frequency to its natural frequency: 1 -/+ zeta, never narrower than
+ * 5 %,
  * since neither the vehicle's frequency nor the speed is known better. Common practice, no source.
  */
 export function resonanceBand(dampingRatio: number): readonly [low: number, high: number] {

@@ -53,7 +53,8 @@ function freeMotion(omega: number, zeta: number, durationS: number): RollStep {
 
 /**
  * Roll of the body along a run of track-plane acceleration that is linear between nodes:
- * phi'' + 2 zeta w phi' + w^2 phi = w^2 (s/g) a(t), integrated exactly (first-order hold), so there is no step-size error
+ * phi'' + 2 zeta w phi' + w^2 phi = w^2 (s/g) a(t), integrated exactly (first-order hold), so there is no step-size
+ * error
  * whatever the spacing of the nodes.
  *
  * timeS: nodes, s, strictly increasing; accelerationMps2: a_q at the nodes, m/s^2; both of length n.
@@ -101,7 +102,10 @@ export function rollResponse(
   }
 }
 
-/** Overshoot of the step response: exp(-pi zeta / sqrt(1 - zeta^2)), a share of the step; 0 from critical damping on. Common practice, no source. */
+/**
+ * Overshoot of the step response: exp(-pi zeta / sqrt(1 - zeta^2)), a share of the step; 0 from critical damping on.
+ * Common practice, no source.
+ */
 export function stepOvershoot(dampingRatio: number): number {
   return dampingRatio >= 1 ? 0 : Math.exp((-Math.PI * dampingRatio) / Math.sqrt(1 - dampingRatio * dampingRatio));
 }
@@ -115,7 +119,10 @@ export function harmonicAmplification(frequencyRatio: number, dampingRatio: numb
   return 1 / Math.hypot(1 - square, 2 * dampingRatio * frequencyRatio);
 }
 
-/** Frequency ratio of the driven peak: sqrt(1 - 2 zeta^2), 0 (no peak) from zeta = 0.707 on. Common practice, no source. */
+/**
+ * Frequency ratio of the driven peak: sqrt(1 - 2 zeta^2), 0 (no peak) from zeta = 0.707 on. Common practice, no
+ * source.
+ */
 export function driveRatioOfPeak(dampingRatio: number): number {
   return Math.sqrt(Math.max(1 - 2 * dampingRatio * dampingRatio, 0));
 }

@@ -15,7 +15,10 @@ export function sideFriction(
   return (x - superelevation) / (1 + superelevation * x);
 }
 
-/** Speed at which the side friction demand is just f: x = (f + e) / (1 - e f), v = sqrt(x g / |kappa|), m/s; 0 when none. */
+/**
+ * Speed at which the side friction demand is just f: x = (f + e) / (1 - e f), v = sqrt(x g / |kappa|), m/s; 0 when
+ * none.
+ */
 export function speedForSideFrictionMps(
   friction: number,
   curvaturePerM: number,

@@ -1,5 +1,6 @@
 /**
- * Makes a permitted speed drivable: the highest speed profile that nowhere exceeds `permittedMps` and whose speed changes
+ * Makes a permitted speed drivable: the highest speed profile that nowhere exceeds `permittedMps` and whose speed
+ * changes
  * stay within the vehicle's acceleration and braking: v_i^2 <= v_{i-1}^2 + 2 a ds (forward pass) and
  * v_i^2 <= v_{i+1}^2 + 2 b ds (backward pass).
  *
@@ -32,8 +33,10 @@ export function drivableSpeedMps(
 }
 
 /**
- * Time lost by driving `slowerMps` instead of `recordedMps` over the stations: sum of 2 ds / (v_i + v_{i+1}), the exact time
- * at constant acceleration within a step, of the one less the other, s. Steps where a speed is unknown or both ends stand
+ * Time lost by driving `slowerMps` instead of `recordedMps` over the stations: sum of 2 ds / (v_i + v_{i+1}), the
+ * exact time
+ * at constant acceleration within a step, of the one less the other, s. Steps where a speed is unknown or both ends
+ * stand
  * still cost nothing: standing time is not part of it.
  */
 export function timeLostS(

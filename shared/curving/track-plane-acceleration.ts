@@ -22,7 +22,8 @@ export function trackPlaneAccelerationMps2(
 }
 
 /**
- * Speed at which the track-plane acceleration is just `limitMps2`: v = sqrt((a + g sin theta) / (|kappa| cos theta)), m/s.
+ * Speed at which the track-plane acceleration is just `limitMps2`: v = sqrt((a + g sin theta) / (|kappa| cos theta)),
+ * m/s.
  * 0 when no speed complies; Infinity on a straight.
  * Source: inverse of trackPlaneAccelerationMps2.
  */

@@ -1,6 +1,7 @@
 /**
  * Versine (mid-ordinate) of a chord on a circular curve, exact: R - sqrt(R^2 - c^2/4), in the unit of the radius.
- * Written as (c^2/4) / (R + sqrt(...)) so that large radii lose no digits. NaN when the chord is longer than the diameter.
+ * Written as (c^2/4) / (R + sqrt(...)) so that large radii lose no digits. NaN when the chord is longer than the
+ * diameter.
  * Source: geometry; c^2/(8R) is the customary approximation.
  */
 export function versineM(chordM: number, radiusM: number): number {

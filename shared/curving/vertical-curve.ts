@@ -7,7 +7,9 @@ export function verticalAccelerationMps2(speedMps: number, verticalCurvaturePerM
   return speedMps * speedMps * Math.abs(verticalCurvaturePerM);
 }
 
-/** Least vertical radius for a vertical acceleration: R_v = v^2 / a_v, m. Source: inverse of verticalAccelerationMps2. */
+/**
+ * Least vertical radius for a vertical acceleration: R_v = v^2 / a_v, m. Source: inverse of verticalAccelerationMps2.
+ */
 export function verticalRadiusM(speedMps: number, accelerationMps2: number): number {
   return (speedMps * speedMps) / accelerationMps2;
 }

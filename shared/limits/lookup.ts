@@ -34,7 +34,10 @@ export function entryOf(set: LimitSet, criterion: CriterionId): Limit | null {
   return null;
 }
 
-/** The limit of one entry that applies at a speed (km/h) and radius (m): its first matching band; null without band or value. */
+/**
+ * The limit of one entry that applies at a speed (km/h) and radius (m): its first matching band; null without band or
+ * value.
+ */
 export function limitIn(limit: Limit, tier: Tier, speedKmh: number, radiusM: number): AppliedLimit | null {
   for (const band of limit.bands) {
     if (!bandApplies(band, speedKmh, radiusM)) continue;

@@ -143,7 +143,8 @@ const stability: PublishedRow[] = (
 testRows([...metric, ...us, ...readTables, ...ballBank, ...stability]);
 
 describe('road formulas against the printed ones', () => {
-  // ERA 2002 table 8-2 prints radii at low speed that are not the point-mass result with the friction beside them (read).
+  // ERA 2002 table 8-2 prints radii at low speed that are not the point-mass result with the friction beside them
+  // (read).
   it.each([
     [20, 0.4, 15],
     [30, 0.32, 35],

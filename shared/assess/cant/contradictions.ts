@@ -42,7 +42,8 @@ function listed(texts: readonly string[]): string {
 }
 
 /**
- * Where a register contradicts itself or the run: cant on a straight, none on a sharp curve, more cant than balance at any
+ * Where a register contradicts itself or the run: cant on a straight, none on a sharp curve, more cant than balance
+ * at any
  * recorded speed, silent on a curve, entries that disagree, adverse cant, values without meaning.
  */
 export function registerFindings(

@@ -1,5 +1,6 @@
 /**
- * Distance of two near places, m: mean-latitude formula on the WGS84 ellipsoid's local radii; below 1 part in 10^4 over some
+ * Distance of two near places, m: mean-latitude formula on the WGS84 ellipsoid's local radii; below 1 part in 10^4
+ * over some
  * tens of kilometres, enough to lay a register onto curves. Arguments [latitude, longitude] in degrees.
  * Source: local radii of curvature M and N of WGS84.
  */

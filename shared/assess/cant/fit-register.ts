@@ -18,9 +18,11 @@ const MOST_STRETCH = 0.02;
 const PROPOSERS = 30;
 
 /**
- * Offset, stretch and direction that lay a register's canted entries onto the curves of a run, found from their middles alone:
+ * Offset, stretch and direction that lay a register's canted entries onto the curves of a run, found from their
+ * middles alone:
  * pairs of an entry and a curve propose an offset for either direction; the proposal that matches most curves within
- * `toleranceM` is refined by least squares. Null when fewer than three entries or curves match: then nothing but the user knows.
+ * `toleranceM` is refined by least squares. Null when fewer than three entries or curves match: then nothing but the
+ * user knows.
  * Time O(curves^2 log entries).
  * Source: own method, common practice of matching landmarks; no source.
  */

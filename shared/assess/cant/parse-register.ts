@@ -153,7 +153,10 @@ function delimiterOf(header: string): string {
   return counts.reduce((best, c) => (c.n > best.n ? c : best)).d;
 }
 
-/** Number of a cell; decimal comma unless the comma separates cells; "12+345.6" is kilometres and metres, given in metres. */
+/**
+ * Number of a cell; decimal comma unless the comma separates cells; "12+345.6" is kilometres and metres, given in
+ * metres.
+ */
 function numberOf(text: string, delimiter: string): { value: number; stationing: boolean } {
   const unified = delimiter === ',' ? text : text.replace(',', '.');
   const station = /^(\d+)\+(\d{1,3}(?:\.\d+)?)$/.exec(unified);
@@ -167,8 +170,10 @@ export interface ParsedRegister {
 }
 
 /**
- * A cant register from delimited text: comma, semicolon or tab; rows by chainage (`from_m`, `to_m`; also km, ft, mi or 12+345),
- * by the positions of their ends (`from_lat`, `from_lon`, `to_lat`, `to_lon`), or by `curve` number; `cant_mm` (or inches),
+ * A cant register from delimited text: comma, semicolon or tab; rows by chainage (`from_m`, `to_m`; also km, ft, mi
+ * or 12+345),
+ * by the positions of their ends (`from_lat`, `from_lon`, `to_lat`, `to_lon`), or by `curve` number; `cant_mm` (or
+ * inches),
  * or `superelevation_pct` for roads; optional `note`. Lines that begin with # are comments.
  * Rows without a place or a value are left out and counted in a finding.
  * Errors: BendbookError cant/empty, cant/no-value-column, cant/no-place-column, cant/no-rows.

@@ -68,7 +68,10 @@ function coverage(register: CantRegister, entry: CantEntry, passage: Passage): n
   return placeCoverage(entry, passage);
 }
 
-/** Entries given by the positions of their ends meet the curve whose middle lies between them (within a third more way, and 60 m). */
+/**
+ * Entries given by the positions of their ends meet the curve whose middle lies between them (within a third more
+ * way, and 60 m).
+ */
 function placeCoverage(entry: CantEntry, passage: Passage): number {
   const { fromLatDeg, fromLonDeg } = entry;
   if (fromLatDeg === undefined || fromLonDeg === undefined) return 0;
@@ -82,7 +85,8 @@ function placeCoverage(entry: CantEntry, passage: Passage): number {
 const LEAST_SHARE = 0.1;
 
 /**
- * Lays a register onto the passages of a run. Where entries of one curve disagree the least cant is taken, the cautious side
+ * Lays a register onto the passages of a run. Where entries of one curve disagree the least cant is taken, the
+ * cautious side
  * for passengers, and the conflict is reported.
  */
 export function resolveRegister(
@@ -136,7 +140,10 @@ export function resolveRegister(
   };
 }
 
-/** Sum over curves of sign(value) x hand: its sign tells which hand a positive value raises, its size how consistently. */
+/**
+ * Sum over curves of sign(value) x hand: its sign tells which hand a positive value raises, its size how
+ * consistently.
+ */
 function handVotes(
   byCurve: readonly Placed[][],
   passages: readonly Passage[],
@@ -159,7 +166,8 @@ function handSense(byCurve: readonly Placed[][], passages: readonly Passage[]): 
 }
 
 /**
- * A register is signed by hand when it has both signs and they follow the curves' hands on at least nine in ten of three or
+ * A register is signed by hand when it has both signs and they follow the curves' hands on at least nine in ten of
+ * three or
  * more curves; otherwise a negative value is adverse cant.
  */
 function signConvention(byCurve: readonly Placed[][], passages: readonly Passage[]): SignConvention {

@@ -256,7 +256,8 @@ describe('ends of a curve', () => {
     const rate = criterion(at(25 / 3.6), 'deficiency_rate');
     expect(rate.low!).toBeLessThan(rate.value! / 1.5);
     expect(rate.high!).toBeGreaterThan(rate.value!);
-    // 24.6 mm at 25 km/h: even over the bogie distance of 17.5 m the rate is 9.8 mm/s; at 60 km/h even 60 m are too short.
+    // 24.6 mm at 25 km/h: even over the bogie distance of 17.5 m the rate is 9.8 mm/s; at 60 km/h even 60 m are too
+    // short.
     expect(rate.verdict).toBe('within');
     expect(criterion(at(80 / 3.6), 'deficiency_rate').verdict).toBe('over');
     expect(at(40 / 3.6).row.verdict).toBe('within');

@@ -3,7 +3,8 @@ import { describe, expect, it } from 'vitest';
 import { drivableSpeedMps, speedChangeCostS, timeLostS } from '../../../shared/curving/speed-profile.ts';
 
 /**
- * Brute force: speeds on a fine ladder; a station keeps a speed only if it is permitted and some kept speed of each neighbour is reachable;
+ * Brute force: speeds on a fine ladder; a station keeps a speed only if it is permitted and some kept speed of each
+ * neighbour is reachable;
  * the answer is the highest speed kept once nothing more falls away.
  */
 function bruteForce(chainage: number[], permitted: number[], a: number, b: number, ladder: number[]): number[] {
