@@ -39,7 +39,7 @@ export class Book {
 
   async #setupOfMode(mode: Mode): Promise<SetupRef> {
     const kept = SetupRef.safeParse(await this.#store.documents.setting(`setup:${mode}`));
-    return kept.success ? kept.data : DEFAULT_SETUP[mode];
+    return await this.#withKnownIds(kept.success ? kept.data : DEFAULT_SETUP[mode]);
   }
 
   /** The setup in effect for a recording: its own, else the one kept for its mode. */
@@ -47,7 +47,7 @@ export class Book {
     const { setup, mode } = await this.#store.recordingSetup(recordingId);
     const own = SetupRef.safeParse(setup);
     if (own.success) return await this.#withKnownIds(own.data);
-    return await this.#withKnownIds(mode === null ? await this.defaultSetup() : await this.#setupOfMode(mode));
+    return mode === null ? await this.defaultSetup() : await this.#setupOfMode(mode);
   }
 
   /**

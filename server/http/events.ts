@@ -12,9 +12,12 @@ export async function streamEvents(request: Request, response: Response, queue: 
   queue.on('job', job);
   queue.on('recording', recording);
   queue.on('removed', removed);
+  const end = () => response.end();
+  queue.on('closing', end);
   session.on('disconnected', () => {
     queue.off('job', job);
     queue.off('recording', recording);
     queue.off('removed', removed);
+    queue.off('closing', end);
   });
 }

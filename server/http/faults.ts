@@ -18,6 +18,7 @@ const STATUS: Readonly<Record<string, number>> = {
   'upload/cut-off': 400,
   'store/disk-full': 507,
   'store/damaged': 500,
+  'store/raw-missing': 404,
   'store/result-missing': 404,
 };
 

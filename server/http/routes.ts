@@ -1,10 +1,10 @@
-import { createReadStream } from 'node:fs';
 import { Readable } from 'node:stream';
 import { pipeline } from 'node:stream/promises';
 import { randomUUID } from 'node:crypto';
 import express, { Router, type Request, type Response } from 'express';
 import { z } from 'zod';
 import { assessRun, parseCantRegister } from '../../shared/assess/index.ts';
+import { parseLimitSet } from '../../shared/limits/index.ts';
 import { BendbookError } from '../../shared/model/fault.ts';
 import * as api from '../../shared/schema/api.ts';
 import { CantRegister } from '../../shared/schema/cant-register.ts';
@@ -81,8 +81,9 @@ export function apiRoutes(store: Store, queue: JobQueue, book: Book, maxUploadBy
   });
   routes.get('/recordings/:id/raw', async (request, response) => {
     const { id, name, bytes } = await recordingOf(request);
+    const stream = await store.raw.read(id);
     response.attachment(plainName(name)).type('application/octet-stream').set('Content-Length', String(bytes));
-    await sendStream(createReadStream(store.raw.path(id)), response);
+    await sendStream(stream, response);
   });
   routes.get('/recordings/:id/preview', async (request, response) => {
     const { id, name } = await recordingOf(request);
@@ -231,7 +232,9 @@ export function apiRoutes(store: Store, queue: JobQueue, book: Book, maxUploadBy
     await book.putSetup(ref, runId === null ? null : (await book.run(runId)).summary.recordingId);
     reply(response, SetupRef, ref);
   });
-  documentRoutes('limit-sets', 'limit-set', LimitSet, BUILT_IN.limitSets);
+  // A set that contradicts itself is refused as one read from a file would be.
+  const whole = (body: unknown) => void parseLimitSet(JSON.stringify(body));
+  documentRoutes('limit-sets', 'limit-set', LimitSet, BUILT_IN.limitSets, whole);
   documentRoutes('vehicles', 'vehicle', Vehicle, BUILT_IN.vehicles);
   documentRoutes('registers', 'register', CantRegister, []);
   routes.post('/registers', express.text({ type: () => true, limit: '10mb' }), async (request, response) => {
@@ -260,6 +263,7 @@ export function apiRoutes(store: Store, queue: JobQueue, book: Book, maxUploadBy
     kind: DocumentKind,
     schema: z.ZodType<{ id: string }>,
     shipped: readonly { readonly id: string }[],
+    check: (body: unknown) => void = () => undefined,
   ): void {
     const own = (id: string) => {
       if (!shipped.some((item) => item.id === id)) return;
@@ -278,6 +282,7 @@ export function apiRoutes(store: Store, queue: JobQueue, book: Book, maxUploadBy
           remedy: 'Use one id in both',
         });
       }
+      check(body);
       await store.documents.put(kind, id, body);
       book.forgetTables();
       reply(response, schema, body);

@@ -17,6 +17,8 @@ interface QueueEvents {
   job: [Job];
   recording: [RecordingSummary];
   removed: [{ id: string }];
+  /** The server is about to end. */
+  closing: [];
 }
 
 interface RunningJob {
@@ -127,6 +129,7 @@ export class JobQueue extends EventEmitter<QueueEvents> {
   /** Ends all threads; running jobs stay in the table and are done again at the next start. */
   async close(): Promise<void> {
     this.#closing = true;
+    this.emit('closing');
     await this.#pool.destroy();
     await Promise.all([...this.#running.values()].map(({ settled }) => settled));
   }

@@ -26,7 +26,14 @@ export async function openDatabase(path: string): Promise<Database> {
     throw error;
   }
   const db = new Kysely<Tables>({ dialect: new SqliteDialect({ database: asKyselyDatabase(connection) }) });
-  return { db, close: () => db.destroy() };
+  return {
+    db,
+    async close() {
+      // Prepared statements keep the file open until they are collected; what the log holds is brought home here.
+      connection.exec('PRAGMA wal_checkpoint(TRUNCATE)');
+      await db.destroy();
+    },
+  };
 }
 
 /** Moves a damaged database and what belongs to it aside; returns where it is now. */

@@ -2,7 +2,9 @@ import { createHash } from 'node:crypto';
 import { createReadStream } from 'node:fs';
 import { mkdir, open, readdir, readFile, rename, rm, stat, writeFile } from 'node:fs/promises';
 import { join } from 'node:path';
+import type { Readable } from 'node:stream';
 import { z } from 'zod';
+import { BendbookError } from '../../shared/model/fault.ts';
 import { ColumnNames } from '../../shared/schema/api.ts';
 import { Mode } from '../../shared/schema/common.ts';
 
@@ -19,6 +21,11 @@ const Sidecar = z.object({
   columns: ColumnNames,
 });
 export type Sidecar = z.infer<typeof Sidecar>;
+
+export const RAW_MISSING = {
+  cause: 'the uploaded file is no longer in the data folder',
+  remedy: 'Results made from it are kept; upload it again to analyse it anew',
+};
 
 /**
  * Uploaded files, byte for byte, each with a small JSON beside it: `<id>.raw` and `<id>.json` under
@@ -49,6 +56,19 @@ export class RawFiles {
 
   path(id: string): string {
     return join(this.#folder, `${id}.raw`);
+  }
+
+  /**
+   * The bytes of a recording.
+   *
+   * @throws BendbookError `store/raw-missing` when somebody took the file away.
+   */
+  async read(id: string): Promise<Readable> {
+    try {
+      return (await open(this.path(id), 'r')).createReadStream();
+    } catch (error) {
+      throw new BendbookError('store/raw-missing', RAW_MISSING, { cause: error });
+    }
   }
 
   /** Takes over an uploaded temporary file. On return it is on the disk under its final name. */

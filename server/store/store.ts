@@ -13,7 +13,7 @@ import { DocumentTable } from './document-table.ts';
 import { JobTable } from './job-table.ts';
 import { parseWire } from './json.ts';
 import { ProfileFiles } from './profile-files.ts';
-import { RawFiles, type Sidecar } from './raw-files.ts';
+import { RAW_MISSING, RawFiles, type Sidecar } from './raw-files.ts';
 import { newRecordingRow, recordingSummary, runRow, runSummary, SUMMARY_COLUMNS } from './rows.ts';
 import type { RecordingRow } from './tables.ts';
 
@@ -92,7 +92,8 @@ export class Store {
     const known = new Set((await db.selectFrom('recordings').select('id').execute()).map(({ id }) => id));
     for (const sidecar of onDisk) if (!known.has(sidecar.id)) await this.#insertRecording(sidecar);
     const present = new Set(onDisk.map(({ id }) => id));
-    for (const id of known) if (!present.has(id)) await this.setRecordingFault(id, RAW_MISSING);
+    for (const id of known)
+      if (!present.has(id)) await this.setRecordingFault(id, { code: 'store/raw-missing', place: {}, ...RAW_MISSING });
     const runs = await db.selectFrom('runs').select('id').execute();
     await this.#profiles.sweep(new Set(runs.map(({ id }) => id)));
   }
@@ -276,13 +277,6 @@ export class Store {
     await this.#database.db.updateTable('runs').set({ line_id: lineId }).where('id', '=', runId).execute();
   }
 }
-
-const RAW_MISSING: Fault = {
-  code: 'store/raw-missing',
-  cause: 'the uploaded file is no longer in the data folder',
-  place: {},
-  remedy: 'Results made from it are kept; upload it again to analyse it anew',
-};
 
 async function openOrRecover(path: string, recover: boolean): Promise<Database> {
   try {
