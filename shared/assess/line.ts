@@ -14,7 +14,7 @@ interface CurveAdvice {
   /** Running time lost when only this curve is obeyed, s. */
   readonly lostS: number;
   readonly utilisation: number | null;
-  /** Utilisation of the governing criterion when the curve is passed at the permitted speed. */
+  /** Utilisation of whichever criterion governs when the curve is passed at the permitted speed. */
   readonly utilisationAfter: number | null;
   /** Utilisation given back per second lost; Infinity when it costs nothing. */
   readonly gainPerS: number;
