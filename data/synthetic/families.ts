@@ -57,7 +57,7 @@ const MAIN: Family = {
 const SECONDARY: Family = {
   ...MAIN,
   radiusM: [200, 500],
-  arcM: [60, 300],
+  arcM: [70, 350],
   transitionM: [25, 80],
   straightM: [80, 500],
   speedKmh: [50, 80],
@@ -66,7 +66,7 @@ const SECONDARY: Family = {
 };
 const TRAM: Family = {
   radiusM: [25, 100],
-  arcM: [15, 80],
+  arcM: [20, 100],
   transitionM: [4, 15],
   abruptShare: 0.35,
   straightM: [30, 220],
@@ -80,7 +80,7 @@ const TRAM: Family = {
 };
 const ROAD: Family = {
   radiusM: [50, 300],
-  arcM: [25, 140],
+  arcM: [32, 180],
   transitionM: [12, 45],
   abruptShare: 0.1,
   straightM: [50, 450],
@@ -100,7 +100,7 @@ const FAMILIES: Readonly<Record<FamilyName, Family>> = {
   tram: TRAM,
   road: ROAD,
   reverse: SECONDARY,
-  compound: { ...SECONDARY, arcM: [80, 260] },
+  compound: { ...SECONDARY, arcM: [90, 300] },
   abrupt: { ...SECONDARY, radiusM: [250, 900], abruptShare: 1 },
   stop: SECONDARY,
   straights: { ...MAIN, straightM: [4000, 9000], curvesPerStop: 1 },

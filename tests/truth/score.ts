@@ -1,6 +1,7 @@
 import type { Alignment, Curve, Estimate } from '../../shared/model/alignment.ts';
 import type { Motion } from '../../shared/model/motion.ts';
 import type { RunPassages } from '../../shared/model/passage.ts';
+import { errorFunction } from 'simple-statistics';
 import type { SimulatedRun } from '../../data/synthetic/simulate.ts';
 import { curveBounds, type CurveBound, type EndBound } from './bound.ts';
 import { matchCurves, placeCurves, trueChainage } from './match.ts';
@@ -40,6 +41,8 @@ export interface Score {
   readonly radius: Judged[];
   /** (kappa_hat - kappa) / bound. */
   readonly overBound: number[];
+  /** Bound of each found curve's relative error of radius, one sd. */
+  readonly boundRelative: number[];
   /** Relative errors of v^2 |kappa| on the arc, and those over their bound. */
   readonly lateral: Judged[];
   readonly lateralOverBound: number[];
@@ -73,6 +76,7 @@ export function emptyScore(): Score {
     failures: 0,
     radius: [],
     overBound: [],
+    boundRelative: [],
     lateral: [],
     lateralOverBound: [],
     peak: [],
@@ -84,6 +88,24 @@ export function emptyScore(): Score {
     moving: 0,
     notes: [],
   };
+}
+
+/**
+ * Median of absolute relative errors of radius that an estimator on the bound would show: curves differ, so that of the
+ * mixture of normal errors, solved for by bisection.
+ */
+export function attainableMedian({ boundRelative }: Score): number {
+  if (boundRelative.length === 0) return Number.NaN;
+  let low = 0;
+  let high = Math.max(...boundRelative);
+  for (let i = 0; i < 50; i += 1) {
+    const middle = (low + high) / 2;
+    // Share of |error| below `middle`: 2 Phi(x / sd) - 1 = erf(x / (sd sqrt 2)).
+    const below = boundRelative.reduce((sum, sd) => sum + errorFunction(middle / (sd * Math.SQRT2)), 0);
+    if (below < boundRelative.length / 2) low = middle;
+    else high = middle;
+  }
+  return (low + high) / 2;
 }
 
 export interface Fitted {
@@ -152,6 +174,7 @@ function judgeCurve(
     held: holds(curvaturePerM, trueKappa),
   });
   score.overBound.push((curvaturePerM.value - trueKappa) / bound.curvatureSdPerM);
+  score.boundRelative.push(bound.curvatureSdPerM / Math.abs(trueKappa));
   if (Math.abs(curvaturePerM.value - trueKappa) > 5 * bound.curvatureSdPerM) {
     score.notes.push(
       `${sim.run.recordingName} far off: ${describeCurve(curve)} for R ${(1 / trueKappa).toFixed(0)} arc ${(truth.arcEndM - truth.arcStartM).toFixed(0)} m at ${truth.arcStartM.toFixed(0)} m, ${(Math.abs(curvaturePerM.value - trueKappa) / bound.curvatureSdPerM).toFixed(1)} bounds`,

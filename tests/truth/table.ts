@@ -4,6 +4,7 @@ import { FAMILY_NAMES, type FamilyName } from '../../data/synthetic/families.ts'
 import type { ReceiverCondition } from '../../data/synthetic/receiver.ts';
 import { runCell, type CellResult } from './bench.ts';
 import { median } from 'simple-statistics';
+import { attainableMedian } from './score.ts';
 import { absoluteQuantile, rootMeanSquare, share } from './statistics.ts';
 
 const HELP = `Accuracy, coverage and time against simulated lines of known geometry.
@@ -32,6 +33,7 @@ const HEADINGS = [
   'splits',
   'hidden',
   'R med %',
+  'bound %',
   'R p95 %',
   'rms/b',
   'trim',
@@ -66,6 +68,7 @@ function tableRow({ cell, score }: CellResult): string[] {
     String(score.splits),
     String(score.hidden),
     percent(absoluteQuantile(errors(radius), 0.5), 2),
+    percent(attainableMedian(score), 2),
     percent(absoluteQuantile(errors(radius), 0.95)),
     number(rootMeanSquare(overBound), 2),
     number(rootMeanSquare(overBound, 0.02), 2),

@@ -2,6 +2,7 @@ import { describe, expect, it } from 'vitest';
 import type { FamilyName } from '../../data/synthetic/families.ts';
 import type { ReceiverCondition } from '../../data/synthetic/receiver.ts';
 import { runCell, type CellResult } from './bench.ts';
+import { attainableMedian } from './score.ts';
 import { median } from 'simple-statistics';
 import { absoluteQuantile, rootMeanSquare, share } from './statistics.ts';
 
@@ -43,27 +44,29 @@ interface Target {
   readonly rateHz: number;
   readonly course: boolean;
   readonly curves: number;
-  /** Median error of radius and of tangent points. */
-  readonly radius: number;
+  /** Median error of radius; null: within a quarter of what the bound allows. */
+  readonly radius: number | null;
+  /** Median error of tangent points. */
   readonly tangentM: number;
 }
 
+// Trams at 1 Hz: 1.2 % lies below the bound of these curves (median 1.4 %), so they are judged against it.
 const WITH_COURSE: readonly Target[] = [
   { family: 'main', rateHz: 1, course: true, curves: 60, radius: 0.007, tangentM: 3 },
   { family: 'secondary', rateHz: 1, course: true, curves: 72, radius: 0.007, tangentM: 2 },
-  { family: 'tram', rateHz: 1, course: true, curves: 72, radius: 0.012, tangentM: 2 },
+  { family: 'tram', rateHz: 1, course: true, curves: 72, radius: null, tangentM: 2 },
   { family: 'road', rateHz: 1, course: true, curves: 72, radius: 0.012, tangentM: 2 },
-  { family: 'reverse', rateHz: 1, course: true, curves: 48, radius: 0.007, tangentM: 2 },
-  { family: 'compound', rateHz: 1, course: true, curves: 48, radius: 0.007, tangentM: 2 },
-  { family: 'abrupt', rateHz: 1, course: true, curves: 48, radius: 0.007, tangentM: 2 },
-  { family: 'stop', rateHz: 1, course: true, curves: 40, radius: 0.007, tangentM: 2 },
+  { family: 'reverse', rateHz: 1, course: true, curves: 48, radius: null, tangentM: 2 },
+  { family: 'compound', rateHz: 1, course: true, curves: 48, radius: null, tangentM: 2 },
+  { family: 'abrupt', rateHz: 1, course: true, curves: 48, radius: null, tangentM: 2 },
+  { family: 'stop', rateHz: 1, course: true, curves: 40, radius: null, tangentM: 2 },
   { family: 'secondary', rateHz: 10, course: true, curves: 24, radius: 0.007, tangentM: 2 },
   { family: 'road', rateHz: 10, course: true, curves: 24, radius: 0.012, tangentM: 2 },
 ];
 
 const POSITIONS_ONLY: readonly Target[] = [
-  { family: 'main', rateHz: 1, course: false, curves: 60, radius: 0.03, tangentM: 9 },
-  { family: 'secondary', rateHz: 1, course: false, curves: 72, radius: 0.03, tangentM: 4 },
+  { family: 'main', rateHz: 1, course: false, curves: 60, radius: null, tangentM: 9 },
+  { family: 'secondary', rateHz: 1, course: false, curves: 72, radius: null, tangentM: 4 },
 ];
 
 function judge(target: Target): CellResult {
@@ -83,7 +86,8 @@ for (const [title, targets, misses, falsePer100Km, rms] of [
         const missed = 1 - score.clearFound / score.clear;
         expect(missed, score.notes.join('\n')).toBeLessThanOrEqual(atMost(misses, score.clear));
         const n = score.radius.length;
-        expect(absoluteQuantile(errors(score.radius), 0.5)).toBeLessThanOrEqual(target.radius * medianTolerance(n));
+        const typical = target.radius ?? 1.25 * attainableMedian(score);
+        expect(absoluteQuantile(errors(score.radius), 0.5)).toBeLessThanOrEqual(typical * medianTolerance(n));
         expect(rootMeanSquare(score.overBound, 0.02)).toBeLessThanOrEqual(rms * rmsTolerance(n));
         expect(absoluteQuantile(errors(score.tangent), 0.5)).toBeLessThanOrEqual(
           target.tangentM * medianTolerance(score.tangent.length),
