@@ -12,6 +12,8 @@ import { isWeak } from './weak.ts';
 
 /** Sensor samples this long before and after the run stay with it, s. */
 const SENSOR_MARGIN_S = 30;
+/** Rounding of degrees in double precision, with a margin for sums in parsers; 0.1 mm on the ground. */
+const POSITION_NOISE_DEG = 1e-9;
 const METRES_PER_DEGREE = 111_195;
 
 function pickFloat(column: Float32Array | null, rows: Uint32Array): Float32Array | null {
@@ -56,14 +58,14 @@ function resolutionOf(
   speedMps: Float32Array | null,
   courseRad: Float32Array | null,
 ): Resolution {
-  const stepLat = stepOf(latDeg, 2e-10) * METRES_PER_DEGREE;
-  const stepLon = stepOf(lonDeg, 2e-10) * METRES_PER_DEGREE * Math.cos(((latDeg[0] ?? 0) * Math.PI) / 180);
+  const stepLat = stepOf(latDeg, POSITION_NOISE_DEG) * METRES_PER_DEGREE;
+  const stepLon = stepOf(lonDeg, POSITION_NOISE_DEG) * METRES_PER_DEGREE * Math.cos(((latDeg[0] ?? 0) * Math.PI) / 180);
   const positionM = Math.sqrt((stepLat * stepLat + stepLon * stepLon) / 2);
   return {
     positionM: positionM < 0.005 ? 0 : positionM,
-    speedMps: speedMps === null ? 0 : atLeast(stepOf(speedMps, 2e-6), 0.001),
+    speedMps: speedMps === null ? 0 : atLeast(stepOf(speedMps, 2e-5), 0.001),
     courseRad: courseRad === null ? 0 : atLeast(stepOf(courseRad, 2e-6), 1e-4),
-    timeS: atLeast(stepOf(timeS, 1e-6), 1e-4),
+    timeS: atLeast(stepOf(timeS, 1e-6, [1, 0.1]), 1e-4),
   };
 }
 
