@@ -1,4 +1,4 @@
-import { CRITERIA } from '../../shared/limits/index.ts';
+import { CRITERIA } from '../../shared/limits/criteria.ts';
 import type { AssessedCurve, CriterionResult, CurveRow } from '../../shared/schema/curve-row.ts';
 import { roundRow } from '../../shared/schema/curve-columns.ts';
 

@@ -1,5 +1,6 @@
 import { useState } from 'preact/hooks';
-import { compareLimitSets, CRITERIA, parseLimitSet } from '../../shared/limits/index.ts';
+import { compareLimitSets } from '../../shared/limits/compare.ts';
+import { CRITERIA } from '../../shared/limits/criteria.ts';
 import { BendbookError } from '../../shared/model/fault.ts';
 import type { LimitSet } from '../../shared/schema/limit-set.ts';
 import { api } from '../api.ts';
@@ -21,6 +22,8 @@ export function LimitSets() {
   const importFile = async (file: File | undefined) => {
     if (file === undefined) return;
     try {
+      // Loaded when needed: checking a file needs the whole schema library.
+      const { parseLimitSet } = await import('../../shared/limits/parse.ts');
       const read = parseLimitSet(await file.text(), file.name);
       const taken = sets.some(({ id, builtIn }) => builtIn && id === read.id);
       await api.putLimitSet(taken ? { ...read, id: `${read.id}-imported` } : read);

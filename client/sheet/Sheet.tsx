@@ -14,7 +14,11 @@ import { TrialControls } from './TrialControls.tsx';
 export function Sheet({ open, number }: { readonly open: OpenRun; readonly number: number }) {
   const [trial, setTrial] = useState<Trial>({ curve: number });
   useEffect(() => setTrial({ curve: number }), [number, open.detail.summary.id]);
-  const recorded = open.curves.find(({ row }) => row.curve === number);
+  // Working lines are made for the one curve shown: for all of them they would cost more than the figures.
+  const recorded = useMemo(
+    () => assessRun(open.passages, open.setup, { working: [number] }).curves.find(({ row }) => row.curve === number),
+    [open, number],
+  );
   const passage = open.passages.passages.find(({ curve }) => curve.number === number);
   const tried = useMemo(() => tryCurve(open, trial, number), [open, trial, number]);
   if (recorded === undefined || passage === undefined) {
@@ -139,7 +143,7 @@ function Step({ open, number }: { readonly open: OpenRun; readonly number: numbe
 
 function tryCurve(open: OpenRun, trial: Trial, number: number): { curve: AssessedCurve; timeChangeS: number } | null {
   const { passages, setup, timeChangeS } = applyTrial(open.passages, open.setup, [trial]);
-  const curve = assessRun(passages, setup).curves.find(({ row }) => row.curve === number);
+  const curve = assessRun(passages, setup, { working: [number] }).curves.find(({ row }) => row.curve === number);
   return curve === undefined ? null : { curve, timeChangeS };
 }
 

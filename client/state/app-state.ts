@@ -142,7 +142,7 @@ export async function openRun(
 
 function assess(detail: RunDetail, passages: RunPassages, ref: SetupRef, catalogue: Catalogue): OpenRun {
   const setup = resolve(ref, catalogue);
-  const { curves, findings, cautions } = assessRun(passages, setup);
+  const { curves, findings, cautions } = assessRun(passages, setup, { working: false });
   edition++;
   return {
     detail,
