@@ -6,7 +6,7 @@ import type { NoiseScore } from './adapt-noise.ts';
 import { adaptProcessNoise } from './adapt-noise.ts';
 import { unwrapHeading, writeChainage } from './chainage.ts';
 import { describe } from './findings.ts';
-import { advanceDoppler, dropMissing } from './lag.ts';
+import { advanceDoppler, advanceDopplerFactor, dropMissing } from './lag.ts';
 import type { Observations } from './observations.ts';
 import { USE, observe } from './observations.ts';
 import { WANDER_TIME_S, walkAt } from './parameters.ts';
@@ -85,6 +85,7 @@ function correctLags(observations: Observations, { lags }: Tuned): Observations 
   if (lags.courseS === 0 && lags.speedS === 0) return observations;
   const advanced = { ...observations, ...advanceDoppler(observations, lags, null) };
   dropMissing(advanced);
+  advanceDopplerFactor(advanced, lags);
   return advanced;
 }
 

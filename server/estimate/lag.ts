@@ -206,6 +206,20 @@ function cubic(before: number, from: number, to: number, after: number, u: numbe
   return from + 0.5 * u * (to - p + u * (2 * p - 5 * from + 4 * to - q + u * (3 * (from - to) + q - p)));
 }
 
+/** Moves the variance factors of Doppler readings along with them: a reading made of two is as doubtful as the worse. */
+export function advanceDopplerFactor(observations: Observations, lags: LagCorrection): void {
+  const { timeS, count, dopplerFactor } = observations;
+  const lagS = lags.courseS !== 0 ? lags.courseS : lags.speedS;
+  const read = dopplerFactor.slice();
+  for (let i = 0; i < count; i++) {
+    const t = timeS[i]! + lagS;
+    let j = i;
+    while (j + 1 < count && timeS[j + 1]! <= t) j++;
+    while (j > 0 && timeS[j]! > t) j--;
+    dopplerFactor[i] = Math.max(read[j]!, read[Math.min(j + 1, count - 1)]!);
+  }
+}
+
 /** Takes away from `use` the readings that the advance left without a value. */
 export function dropMissing(observations: Observations): void {
   const { use, speedMps, courseRad, count } = observations;

@@ -139,13 +139,13 @@ export class MotionFilter {
       } else {
         this.#predict(i, timeS[i]! - timeS[i - 1]!);
         const missed = this.missed[0]!;
-        if (missed >= MISSED_WITHOUT_COURSE && (use[i]! & USE.COURSE) === 0) {
+        const onset = Math.max(from, i - missed);
+        if (missed >= MISSED_WITHOUT_COURSE && (use[i]! & USE.COURSE) === 0 && !startedNear(use, onset)) {
           // Positions alone: the vehicle turned or braked as the model thought unlikely, and the filter has lost it. Start afresh
           // where that began; in this block, because what lies before it is settled.
           this.deviance += RESTART_DEVIANCE;
-          i = Math.max(from, i - missed);
-          use[i]! |= USE.RESTART;
-          i--;
+          use[onset]! |= USE.RESTART;
+          i = onset - 1;
           continue;
         }
         if (missed >= MISSED_WITH_COURSE && (use[i]! & USE.POSITION) !== 0) this.#freePosition(i);
@@ -465,6 +465,12 @@ export class MotionFilter {
       record[at + STATES + 4] = third;
     }
   }
+}
+
+/** Did the filter start afresh at the fix or just before it? It is not to be chopped into single fixes. */
+function startedNear(use: Uint8Array, i: number): boolean {
+  for (let k = i; k >= Math.max(0, i - 2); k--) if ((use[k]! & USE.RESTART) !== 0) return true;
+  return false;
 }
 
 /** whole := next whole, both in the sparse form of predictCovariance (the form is closed under composition). */

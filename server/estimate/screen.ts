@@ -66,7 +66,7 @@ function secondDifference(timeS: Float64Array, values: Float64Array, i: number):
 }
 
 function screenDoppler(o: Observations): number {
-  const { count, timeS, use, speedMps, courseRad, northRad, dopplerFactor } = o;
+  const { count, timeS, use, speedMps, courseRad, northRad, dopplerFactor, positionFactor } = o;
   if (speedMps === null) return 0;
   let found = 0;
   // Lateral and longitudinal acceleration of the steps (i - 2, i - 1), (i - 1, i) and (i, i + 1).
@@ -87,8 +87,11 @@ function screenDoppler(o: Observations): number {
     along.push(usable && (both & USE.SPEED) !== 0 ? (speedMps[i]! - speedMps[i - 1]!) / step : 0);
     if (i < 3) continue;
     if (isSpike(lateral, LATERAL_SPIKE_MPS2) || isSpike(along, ALONG_SPIKE_MPS2)) {
-      dopplerFactor[i - 2] = Math.max(dopplerFactor[i - 2]!, SUSPECT_FACTOR);
-      dopplerFactor[i - 1] = Math.max(dopplerFactor[i - 1]!, SUSPECT_FACTOR);
+      // Position and velocity come from one solution of the receiver: where one leaps the other is not to be relied on.
+      for (let k = i - 2; k < i; k++) {
+        dopplerFactor[k] = Math.max(dopplerFactor[k]!, SUSPECT_FACTOR);
+        positionFactor[k] = Math.max(positionFactor[k]!, SUSPECT_FACTOR);
+      }
       found++;
     }
   }

@@ -27,14 +27,18 @@ export function writeStart(
   let headingVariance = HEADING_VARIANCE;
   let speed = 0;
   for (let j = i; j < count; j++) {
-    if (j > i && (use[j]! & USE.RESTART) !== 0) break;
-    if ((use[j]! & USE.COURSE) !== 0 && courseRad !== null) {
+    if ((use[j]! & USE.COURSE) !== 0 && courseRad !== null && (j === i || (use[j]! & USE.RESTART) === 0)) {
       heading = northRad[j]! - courseRad[j]!;
       headingVariance = HEADING_VARIANCE_WITH_COURSE;
       break;
     }
     const dx = xM[j]! - xM[i]!;
     const dy = yM[j]! - yM[i]!;
+    if (j > i && (use[j]! & USE.RESTART) !== 0) {
+      // The stretch ends before the vehicle has gone far: what displacement there is must do.
+      heading = Math.atan2(dy, dx);
+      break;
+    }
     if (dx * dx + dy * dy >= LEAST_DISPLACEMENT_M ** 2) {
       heading = Math.atan2(dy, dx);
       if ((use[i]! & USE.STANDING) === 0) speed = Math.min(60, Math.hypot(dx, dy) / (timeS[j]! - timeS[i]!));

@@ -44,7 +44,7 @@ const penalty = (logarithm: number, prior: Prior): number => ((logarithm - Math.
  * The fixes to tune on: all when there are few, else stretches spread over the run, each the most moving of its part.
  * `stride` thins them.
  */
-export function tuningSubset(observations: Observations, stride: number): Observations {
+function tuningSubset(observations: Observations, stride: number): Observations {
   const { count, use } = observations;
   const indices: number[] = [];
   const restarts = new Set<number>();
@@ -74,7 +74,7 @@ export function tuningSubset(observations: Observations, stride: number): Observ
 }
 
 /** Deviance of the subset under the parameters, with outliers counted by the logarithm of their size. */
-export function deviance(observations: Observations, parameters: Parameters): number {
+function deviance(observations: Observations, parameters: Parameters): number {
   // The filter marks where it starts afresh: on a copy, so that no trial leaves its marks to the next.
   const filter = new MotionFilter({ ...observations, use: observations.use.slice() }, parameters, null, GATE);
   filter.advance(0, observations.count, null);
