@@ -1,22 +1,7 @@
+import { FitEncoder } from 'fit-file-parser/encoder';
+
 /** Header of at least 12 bytes: size, protocol, profile (2), data size (4, little endian), ".FIT". */
 const LEAST_HEADER = 12;
-
-// Source of checksum and record headers: FIT protocol description, "Flexible and Interoperable Data Transfer Protocol".
-const CRC_TABLE = [
-  0x0000, 0xcc01, 0xd801, 0x1400, 0xf001, 0x3c00, 0x2800, 0xe401, 0xa001, 0x6c00, 0x7800, 0xb401, 0x5000, 0x9c01,
-  0x8801, 0x4400,
-];
-
-/** CRC-16 of the FIT protocol over bytes `start`..`end`. */
-export function fitCrc(bytes: Uint8Array, start: number, end: number): number {
-  let crc = 0;
-  for (let i = start; i < end; i++) {
-    const byte = bytes[i]!;
-    crc = (crc >> 4) ^ CRC_TABLE[crc & 15]! ^ CRC_TABLE[byte & 15]!;
-    crc = (crc >> 4) ^ CRC_TABLE[crc & 15]! ^ CRC_TABLE[byte >> 4]!;
-  }
-  return crc;
-}
 
 export function isFit(bytes: Uint8Array): boolean {
   return (
@@ -40,7 +25,10 @@ export interface FitPart {
   readonly stop: number;
 }
 
-/** Walks the record headers; returns the end of the last whole record at or before `end`. */
+/**
+ * Walks the record headers (FIT protocol: definition and data messages, compressed time stamps, developer fields); returns
+ * the end of the last whole record at or before `end`.
+ */
 function lastWholeRecord(bytes: Uint8Array, start: number, end: number): number {
   const sizes = new Map<number, number>();
   let at = start;
@@ -89,7 +77,7 @@ export function fitParts(bytes: Uint8Array): FitPart[] {
     const announced = header + size + 2;
     const cutOff = announced > whole.length;
     const dataEnd = cutOff ? whole.length : header + size;
-    const crcFits = !cutOff && fitCrc(whole, 0, dataEnd) === view.getUint16(dataEnd, true);
+    const crcFits = !cutOff && FitEncoder.calculateCRC(whole.subarray(0, dataEnd)) === view.getUint16(dataEnd, true);
     if (crcFits)
       parts.push({ bytes: whole.subarray(0, announced), cutOff: false, damaged: false, stop: at + announced });
     else {
@@ -98,8 +86,8 @@ export function fitParts(bytes: Uint8Array): FitPart[] {
       mended.set(whole.subarray(0, stop));
       const target = new DataView(mended.buffer);
       target.setUint32(4, stop - header, true);
-      if (header >= 14) target.setUint16(12, fitCrc(mended, 0, 12), true);
-      target.setUint16(stop, fitCrc(mended, 0, stop), true);
+      if (header >= 14) target.setUint16(12, FitEncoder.calculateCRC(mended.subarray(0, 12)), true);
+      target.setUint16(stop, FitEncoder.calculateCRC(mended.subarray(0, stop)), true);
       parts.push({ bytes: mended, cutOff, damaged: !cutOff, stop: at + stop });
     }
     if (cutOff) break;

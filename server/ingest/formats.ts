@@ -58,7 +58,9 @@ export const FORMATS: readonly Format[] = [
   },
   {
     name: 'nmea',
-    recognises: ({ text }) => /\$[A-Z]{2}(?:RMC|GGA|GNS|GLL|VTG|GSA|GSV|GST|ZDA),/.test(text),
+    // A sentence of interest, or any sentence with its checksum.
+    recognises: ({ text }) =>
+      /\$[A-Z]{2}(?:RMC|GGA|GNS|GLL|VTG|GSA|GSV|GST|ZDA),|^\$[A-Z]{5},.*\*[0-9A-F]{2}\s*$/m.test(text),
     read: readNmea,
   },
   {

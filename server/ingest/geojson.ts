@@ -42,7 +42,7 @@ export async function readGeoJson(source: ByteSource, context: ReadContext): Pro
     throw new BendbookError(
       'ingest/damaged',
       {
-        cause: `The GeoJSON text is damaged or cut off: ${error instanceof Error ? error.message.slice(0, 200) : ''}`,
+        cause: `The GeoJSON text is damaged or cut off: ${error instanceof Error ? withoutExcerpt(error.message) : ''}`,
         place: { file: source.name, ...(at === undefined ? {} : { byte: Number(at) }) },
         remedy: 'Export the log again',
       },
@@ -166,4 +166,9 @@ export async function readGeoJson(source: ByteSource, context: ReadContext): Pro
 function epoch(value: number): number {
   if (value > 3.1e8 && value < 4.2e9) return value;
   return value > 3.1e11 && value < 4.2e12 ? value / 1000 : NaN;
+}
+
+/** The engine's message without the piece of the file that it quotes. */
+function withoutExcerpt(message: string): string {
+  return message.replace(/,\s*"?\.{3}[\s\S]*$|,\s*"[\s\S]*$/, '');
 }

@@ -203,6 +203,13 @@ export async function readGpx(source: ByteSource, context: ReadContext): Promise
       title = found.title || title;
       for (const point of found.waypoints) {
         if (Math.abs(point.latDeg) <= 90 && Math.abs(point.lonDeg) <= 180) waypoints.push(point);
+        else {
+          log.note(
+            'bad-waypoint',
+            'info',
+            (n) => `${counted(n, 'waypoint')} without a valid latitude and longitude left out`,
+          );
+        }
       }
     }
     if (slimFull) {
