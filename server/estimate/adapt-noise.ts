@@ -26,12 +26,7 @@ export interface NoiseScore {
  * their sums over a window says by how much the local motion exceeds what the log's average allows. Where the ratio is r
  * the strength is multiplied by 2 r - 1: about half of what is expected is the observations' own noise.
  */
-function adaptNoise(
-  timeS: Float64Array,
-  score: NoiseScore,
-  greatest: (i: number) => number,
-  out: Float32Array,
-): void {
+function adaptNoise(timeS: Float64Array, score: NoiseScore, greatest: (i: number) => number, out: Float32Array): void {
   const { found, expected } = score;
   const count = out.length;
   let from = 0;

@@ -16,7 +16,7 @@ const OVERLAP = 3;
 const LONGEST_LAG_S = 1.5;
 
 /** Seconds by which a channel's readings lag behind the positions; sd infinite where nothing can be said. */
-export interface Lag {
+interface Lag {
   readonly lagS: number;
   readonly sdS: number;
 }

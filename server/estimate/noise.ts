@@ -1,5 +1,5 @@
 /** Autocorrelation of a Gauss-Markov error between instants dt apart. */
-export function autocorrelation(dtS: number, timeS: number): number {
+function autocorrelation(dtS: number, timeS: number): number {
   return Math.exp(-dtS / timeS);
 }
 

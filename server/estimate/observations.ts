@@ -60,7 +60,7 @@ function medianPositive(values: Float32Array): number {
 }
 
 /** Variance factor of each position before any robust weighting: weak fixes and stated accuracies worse than the median. */
-export function writeStatedFactors(run: Run, out: Float32Array): void {
+function writeStatedFactors(run: Run, out: Float32Array): void {
   const { flags, accuracyM, count } = run.fixes;
   const median = accuracyM === null ? NaN : medianPositive(accuracyM);
   for (let i = 0; i < count; i++) {
