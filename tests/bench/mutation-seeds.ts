@@ -53,7 +53,7 @@ function igcText(): string {
 
 /** A FIT activity of records with time, place, height and speed, by the encoder of the library. */
 export function fitBytes(points = POINTS): Uint8Array {
-  const encoder = new FitEncoder();
+  const encoder = new FitEncoder({ protocolVersion: 0x20 });
   const semicircles = (degrees: number) => Math.round((degrees * 2 ** 31) / 180);
   const [UINT16, SINT32, UINT32] = [0x84, 0x85, 0x86];
   for (let i = 0; i < points; i++) {

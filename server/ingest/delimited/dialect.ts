@@ -95,9 +95,8 @@ function withoutKnownNames(lines: readonly string[]): Dialect {
 /** True when most lines of a text fall into the same number (two or more) of cells. */
 export function looksDelimited(text: string): boolean {
   const lines = text.split(/\r\n|\r|\n/).filter((line) => line.trim() !== '');
-  // The head may end inside a line.
-  if (lines.length > 2) lines.pop();
-  const sample = lines.slice(0, 400);
+  // A long head may end inside a line: the last of many says little.
+  const sample = lines.slice(0, Math.max(3, Math.min(400, lines.length - 1)));
   if (sample.length === 0) return false;
   const printable = text.slice(0, 4096).replace(/[\x20-\x7e\u00a0-\ufffc\t\r\n]/g, '').length;
   if (printable > 0.05 * Math.min(4096, text.length)) return false;
