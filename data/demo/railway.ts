@@ -34,7 +34,7 @@ const curve = (
 ): BuiltCurve => ({ straightM, hand, radiusM, arcM, entryM, exitM, postedKmh, cantMm });
 
 /** Cant deficiency 11.8 V^2/R - D at posted speed: mostly 55 to 95 mm, curves 10 and 18 about 170, 13 and 20 about 130. */
-export const RAIL_CURVES: readonly BuiltCurve[] = [
+const RAIL_CURVES: readonly BuiltCurve[] = [
   curve(420, 'left', 800, 210, 70, 70, 90, 40),
   curve(260, 'right', 450, 160, 80, 80, 80, 80),
   curve(180, 'left', 1200, 320, 90, 90, 110, 30),

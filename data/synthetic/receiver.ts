@@ -72,7 +72,7 @@ const COURSE_FLOOR_MPS = 1.2;
 const STANDSTILL_MPS = 0.3;
 
 /** Draws a receiver: ranges of the error model for ordinary receivers (common practice, no source). */
-export function drawErrors(options: ReceiverOptions, random: RandomStream): ReceiverErrors {
+function drawErrors(options: ReceiverOptions, random: RandomStream): ReceiverErrors {
   const condition = options.condition ?? 'clean';
   const sigmaDoppler = random.between(0.05, 0.1);
   const drawn: ReceiverErrors = {

@@ -9,7 +9,7 @@ import { observe, type Observation, type ReceiverErrors, type ReceiverOptions } 
 import { planTravel, type Travel } from './speed.ts';
 
 /** One end of a true curve: a change of curvature over `lengthM` (0 when abrupt). */
-export interface TrueCurveEnd {
+interface TrueCurveEnd {
   readonly lengthM: number;
   /** Chainage of the middle of the change, m. */
   readonly middleM: number;

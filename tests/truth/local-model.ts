@@ -4,7 +4,7 @@ import type { TrueCurve } from '../../data/synthetic/simulate.ts';
 const SHORTEST_CHANGE_M = 0.5;
 const QUADRATURE_STEP_M = 3;
 
-/** One change of curvature inside a group; levels are numbered in order, outer ones are straights. */
+/** Parameter indices of one change of curvature; levels are numbered in order, the outer ones are straights. */
 interface Change {
   readonly middle: number;
   readonly squaredLength: number;
@@ -59,14 +59,13 @@ export function groupCurves(curves: readonly TrueCurve[], lineLengthM: number): 
 }
 
 function layGroup(members: readonly TrueCurve[], fromM: number, toM: number): CurveGroup {
-  const levels: number[] = [];
-  const changes: (Change & { readonly middleM: number; readonly lengthM: number })[] = [];
+  const changes: { readonly middleM: number; readonly lengthM: number }[] = [];
   const levelValues = [0];
   const levelOfCurve: number[] = [];
   const entryOf: number[] = [];
   const exitOf: number[] = [];
   const change = (middleM: number, lengthM: number, to: number) => {
-    changes.push({ middle: 0, squaredLength: 0, middleM, lengthM });
+    changes.push({ middleM, lengthM });
     levelValues.push(to);
     return changes.length - 1;
   };
@@ -85,7 +84,6 @@ function layGroup(members: readonly TrueCurve[], fromM: number, toM: number): Cu
     values.push(value);
     return values.length - 1;
   });
-  levels.push(...levelParameter);
   const placed = changes.map((one) => {
     values.push(one.middleM, Math.max(one.lengthM, SHORTEST_CHANGE_M) ** 2);
     return { middle: values.length - 2, squaredLength: values.length - 1 };
@@ -95,7 +93,7 @@ function layGroup(members: readonly TrueCurve[], fromM: number, toM: number): Cu
     fromM,
     toM,
     parameters: Float64Array.from(values),
-    levelParameter: levels,
+    levelParameter,
     changes: placed,
     curveParameters: members.map((_, i) => ({
       level: levelParameter[levelOfCurve[i]!]!,

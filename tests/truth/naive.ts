@@ -6,7 +6,7 @@ const SHORTEST_CHORD_M = 8;
 const SHORTEST_CURVE_M = 10;
 
 /** What a plain local circle fit makes of the positions: no interval, no noise model. */
-export interface NaiveFit {
+interface NaiveFit {
   readonly chainageM: Float64Array;
   readonly curvaturePerM: Float64Array;
   readonly curves: readonly { readonly fromM: number; readonly toM: number; readonly curvaturePerM: number }[];
@@ -19,7 +19,7 @@ export interface NaiveFit {
  * @param halfWindowS half of the window, s
  * @param thresholdPerM curvature above which a curve begins; it ends below 0.7 of it, and must be SHORTEST_CURVE_M long
  */
-export function naiveFit(run: Run, halfWindowS: number, thresholdPerM: number): NaiveFit {
+function naiveFit(run: Run, halfWindowS: number, thresholdPerM: number): NaiveFit {
   const { xM, yM, timeS, count } = run.fixes;
   const chainageM = new Float64Array(count);
   const curvaturePerM = new Float64Array(count);

@@ -9,7 +9,7 @@ import { matchCurves, placeCurves, trueChainage } from './match.ts';
 /** Curves seen by good fixes for less than this share of their time are counted apart. */
 const HIDDEN_BELOW = 0.7;
 /** A curve this many bound sd from straight must be found. */
-export const CLEAR_SIGMA = 6;
+const CLEAR_SIGMA = 6;
 /** A false hotspot: lateral acceleration that its own 95 % interval puts this far above the truth nearby, m/s^2. */
 const HOTSPOT_MPS2 = 0.3;
 const HOTSPOT_NEAR_M = 40;
@@ -17,7 +17,7 @@ const HOTSPOT_NEAR_M = 40;
 const SHORT_PASSAGE_S = 8;
 
 /** Error, and whether the 95 % interval held the truth. */
-export interface Judged {
+interface Judged {
   readonly error: number;
   readonly held: boolean;
 }

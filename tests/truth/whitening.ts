@@ -1,5 +1,5 @@
 /** One Gauss-Markov part of the error of each horizontal axis. */
-export interface SlowError {
+interface SlowError {
   readonly sigma: number;
   readonly tauS: number;
 }
