@@ -30,8 +30,9 @@ const LEAST_WINDOWS = 5;
 function ratioToPositions({ count, timeS, xM, yM, speedMps }: MovingColumns): { ratio: number; spread: number } {
   const ratios = new Float64Array(count).fill(NaN);
   let windows = 0;
-  for (let a = 0, b = 0; a < count; a = Math.max(b, a + 1)) {
-    b = a;
+  let a = 0;
+  while (a < count) {
+    let b = a;
     let way = 0;
     let driven = 0;
     let whole = true;
@@ -48,6 +49,7 @@ function ratioToPositions({ count, timeS, xM, yM, speedMps }: MovingColumns): { 
     if (whole && way >= LEAST_WAY_M && way / (timeS[b]! - timeS[a]!) > 3 && Number.isFinite(driven)) {
       ratios[windows++] = driven / way;
     }
+    a = Math.max(b, a + 1);
   }
   if (windows < LEAST_WINDOWS) return { ratio: NaN, spread: NaN };
   const at = (share: number) => sampledQuantile(windows, share, (i) => ratios[i]!);

@@ -189,7 +189,7 @@ function memberOf(zip: ZipFile, entry: Entry, member: string, archive: string, b
       async *open() {
         const stream = await new Promise<Readable>((resolve, reject) => {
           zip.openReadStream(entry, (error, opened) => {
-            if (opened === undefined) reject(damaged(name, error));
+            if (error !== null) reject(damaged(name, error));
             else resolve(opened);
           });
         });

@@ -21,8 +21,8 @@ export interface Head {
 export interface Format {
   readonly name: RecordingFormat;
   /** True when the content, whatever its file is called, is of this format. */
-  recognises(head: Head): boolean;
-  read(source: ByteSource, context: ReadContext): Promise<Recording>;
+  readonly recognises: (head: Head) => boolean;
+  readonly read: (source: ByteSource, context: ReadContext) => Promise<Recording>;
 }
 
 /** True when the first element of an XML document, prefix aside, is `name`. */

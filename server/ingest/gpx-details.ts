@@ -1,4 +1,5 @@
 import { createRequire } from 'node:module';
+import type * as workerThreads from 'node:worker_threads';
 import { Worker } from 'node:worker_threads';
 import type { Waypoint } from '../../shared/model/recording.ts';
 
@@ -36,7 +37,7 @@ function gpxDetailsWorker(require: NodeJS.Require): void {
     routes: { name: string | null; points: Point[] }[];
     parse(text: string): void;
   }
-  const { parentPort } = require('node:worker_threads') as typeof import('node:worker_threads');
+  const { parentPort } = require('node:worker_threads') as typeof workerThreads;
   const { JSDOM } = require('jsdom') as { JSDOM: new (html: string) => { window: { document: Document } } };
   interface Document {
     createElement(name: string): { innerHTML: string; value: string };

@@ -33,26 +33,26 @@ export async function readGpx(source: ByteSource, context: ReadContext): Promise
   const stamp: Stamp = { utcS: NaN, zoned: false };
 
   let slim = '';
-  let slimFull = false;
-  let details = false;
+  /** Whether the slim copy is full, and whether it has anything for gpxparser. */
+  const copy = { full: false, details: false };
   let title = '';
   let segment = -1;
   let inTrack = false;
-  let inPoint = false;
-  let good = false;
+  /** Whether a track point is open, and whether its place is good. */
+  const now = { inPoint: false, good: false };
   let line = 0;
   let path: string[] = [];
   const emit = (piece: string) => {
-    if (slim.length + piece.length > MAX_SLIM) slimFull = true;
-    if (!slimFull) slim += piece;
+    if (slim.length + piece.length > MAX_SLIM) copy.full = true;
+    if (!copy.full) slim += piece;
   };
 
   const beginPoint = (attributes: Record<string, string>): void => {
-    inPoint = true;
+    now.inPoint = true;
     const lat = decimal(attributes.lat ?? '');
     const lon = wrapLongitude(decimal(attributes.lon ?? ''));
-    good = lat >= -90 && lat <= 90 && !Number.isNaN(lon);
-    if (!good) {
+    now.good = lat >= -90 && lat <= 90 && !Number.isNaN(lon);
+    if (!now.good) {
       log.note(
         'bad-position',
         'warning',
@@ -67,7 +67,7 @@ export async function readGpx(source: ByteSource, context: ReadContext): Promise
   };
 
   const pointValue = (name: string, text: string): void => {
-    if (!good) return;
+    if (!now.good) return;
     switch (name) {
       case 'time': {
         const utcS = parseIso(text.trim(), stamp);
@@ -133,7 +133,7 @@ export async function readGpx(source: ByteSource, context: ReadContext): Promise
 
   const end = await readXml(source, note, /<(?:\w+:)?trkpt[\s/>]/, {
     open(name, attributes, at) {
-      if (inPoint) return;
+      if (now.inPoint) return;
       if (name === 'trkpt') {
         line = at;
         beginPoint(attributes);
@@ -144,7 +144,7 @@ export async function readGpx(source: ByteSource, context: ReadContext): Promise
         return;
       }
       if (name === 'trk') inTrack = true;
-      if (name === 'wpt' || name === 'rtept') details = true;
+      if (name === 'wpt' || name === 'rtept') copy.details = true;
       path.push(name);
       let tag = `<${name}`;
       for (const key in attributes) {
@@ -154,11 +154,11 @@ export async function readGpx(source: ByteSource, context: ReadContext): Promise
     },
     close(name, text) {
       if (name === 'trkpt') {
-        inPoint = false;
-        good = false;
+        now.inPoint = false;
+        now.good = false;
         return;
       }
-      if (inPoint) {
+      if (now.inPoint) {
         pointValue(name, text);
         return;
       }
@@ -166,7 +166,7 @@ export async function readGpx(source: ByteSource, context: ReadContext): Promise
       if (name === 'trk') inTrack = false;
       if (name === 'name') {
         const parent = path.at(-2);
-        if (parent === 'metadata') details = true;
+        if (parent === 'metadata') copy.details = true;
         if (title === '' && (parent === 'gpx' || (parent === 'trk' && inTrack))) title = text.trim().slice(0, 500);
       }
       if (path.at(-1) === name) path.pop();
@@ -178,22 +178,22 @@ export async function readGpx(source: ByteSource, context: ReadContext): Promise
         'serious',
         (n) => `Damaged at ${counted(n, 'place')}: ${damage.cause}; points half read there were left out`,
         { file: source.name, line: damage.line },
-        inPoint && good ? 1 : 0,
+        now.inPoint && now.good ? 1 : 0,
       );
-      if (inPoint && good) fixes.dropLast();
-      inPoint = good = false;
+      if (now.inPoint && now.good) fixes.dropLast();
+      now.inPoint = now.good = false;
       // What follows belongs to the document itself again.
       emit(path.slice(1).reduceRight((xml, name) => `${xml}</${name}>`, ''));
       path = path.slice(0, 1);
     },
   });
   // The last point may lack what came after the cut; it is kept when it has its time.
-  const half = end.cutOff && inPoint && good && Number.isNaN(fixes.utcAt(fixes.count - 1));
+  const half = end.cutOff && now.inPoint && now.good && Number.isNaN(fixes.utcAt(fixes.count - 1));
   if (half) fixes.dropLast();
   noteXmlEnd(log, end, note, source.name, half ? 1 : 0);
 
   const waypoints: Waypoint[] = [];
-  if (details) {
+  if (copy.details) {
     // gpxparser wants one well-formed document: close what a cut or a damage left open.
     const closed = path.reduceRight((xml, name) => `${xml}</${name}>`, slim);
     const { details: found, reason } = await readGpxDetails(closed);
@@ -212,7 +212,7 @@ export async function readGpx(source: ByteSource, context: ReadContext): Promise
         }
       }
     }
-    if (slimFull) {
+    if (copy.full) {
       log.note('waypoints-cut', 'info', () => 'More waypoints and routes than can be kept: the last are left out');
     }
   }

@@ -50,7 +50,7 @@ export async function readKml(source: ByteSource, context: ReadContext): Promise
   let title = '';
   let segment = 0;
   // The track being read: times and places come in two lists.
-  let inTrack = false;
+  const now = { inTrack: false };
   let trackFirst = 0;
   let whens: number[] = [];
   let coords: { place: Place | null; empty: boolean; line: number }[] = [];
@@ -91,7 +91,7 @@ export async function readKml(source: ByteSource, context: ReadContext): Promise
   };
 
   const endTrack = (): void => {
-    inTrack = false;
+    now.inTrack = false;
     coords.forEach(({ place, empty, line: at }, i) => {
       if (place === null) {
         if (!empty) bad(at);
@@ -124,7 +124,7 @@ export async function readKml(source: ByteSource, context: ReadContext): Promise
       line = at;
       path.push(name);
       if (name === 'Track') {
-        inTrack = true;
+        now.inTrack = true;
         trackFirst = at;
         whens = [];
         coords = [];
@@ -133,7 +133,7 @@ export async function readKml(source: ByteSource, context: ReadContext): Promise
         inMark = true;
         markName = '';
         markTime = NaN;
-      } else if (inTrack && name === 'SimpleArrayData') {
+      } else if (now.inTrack && name === 'SimpleArrayData') {
         const kept = ARRAYS[(attributes.name ?? '').toLowerCase()];
         array = kept === undefined ? null : (arrays[kept] = []);
       }
@@ -146,11 +146,11 @@ export async function readKml(source: ByteSource, context: ReadContext): Promise
           endTrack();
           return;
         case 'when':
-          if (inTrack && parent === 'Track') whens.push(time(text));
+          if (now.inTrack && parent === 'Track') whens.push(time(text));
           else if (parent === 'TimeStamp' && inMark) markTime = time(text);
           return;
         case 'coord':
-          if (inTrack) coords.push({ place: placeFrom(text, /\s+/), empty: text.trim() === '', line });
+          if (now.inTrack) coords.push({ place: placeFrom(text, /\s+/), empty: text.trim() === '', line });
           return;
         case 'value':
           array?.push(decimal(text));
@@ -185,7 +185,7 @@ export async function readKml(source: ByteSource, context: ReadContext): Promise
       }
     },
     damaged(damage) {
-      const lost = inTrack ? coords.length : 0;
+      const lost = now.inTrack ? coords.length : 0;
       log.note(
         'damaged',
         'serious',
@@ -193,14 +193,14 @@ export async function readKml(source: ByteSource, context: ReadContext): Promise
         { file: source.name, line: damage.line },
         lost,
       );
-      inTrack = inMark = false;
+      now.inTrack = inMark = false;
       whens = [];
       coords = [];
       path.length = 0;
     },
   });
   // A track cut off by the end of the file keeps what it has.
-  if (inTrack) endTrack();
+  if (now.inTrack) endTrack();
   const hasTracks = fixes.count > 0;
   for (const { name, utcS, place, line: at } of marks) {
     if (hasTracks) waypoints.push({ name, latDeg: place.lat, lonDeg: place.lon });

@@ -20,7 +20,7 @@ export async function readTcx(source: ByteSource, context: ReadContext): Promise
   const stamp: Stamp = { utcS: NaN, zoned: false };
   let segment = -1;
   let title = '';
-  let inPoint = false;
+  const now = { inPoint: false };
   let line = 0;
   let point = { utcS: NaN, lat: NaN, lon: NaN, height: NaN, speed: NaN, placed: false };
   let without = 0;
@@ -49,19 +49,19 @@ export async function readTcx(source: ByteSource, context: ReadContext): Promise
   const end = await readXml(source, note, /<(?:\w+:)?Trackpoint[\s/>]/, {
     open(name, _attributes, at) {
       if (name === 'Trackpoint') {
-        inPoint = true;
+        now.inPoint = true;
         line = at;
         point = { utcS: NaN, lat: NaN, lon: NaN, height: NaN, speed: NaN, placed: false };
       } else if (name === 'Track') segment++;
     },
     close(name, text) {
-      if (!inPoint) {
+      if (!now.inPoint) {
         if (title === '' && (name === 'Name' || name === 'Notes')) title = text.trim().slice(0, 500);
         return;
       }
       switch (name) {
         case 'Trackpoint':
-          inPoint = false;
+          now.inPoint = false;
           finish();
           return;
         case 'Time':
@@ -95,15 +95,15 @@ export async function readTcx(source: ByteSource, context: ReadContext): Promise
         'serious',
         (n) => `Damaged at ${counted(n, 'place')}: ${damage.cause}; points half read there were left out`,
         { file: source.name, line: damage.line },
-        inPoint ? 1 : 0,
+        now.inPoint ? 1 : 0,
       );
-      inPoint = false;
+      now.inPoint = false;
     },
   });
   if (without > 0) {
     log.note('no-fix', 'info', (n) => `${counted(n, 'track point')} without a position`, null, 0, without);
   }
-  noteXmlEnd(log, end, note, source.name, inPoint ? 1 : 0);
+  noteXmlEnd(log, end, note, source.name, now.inPoint ? 1 : 0);
   return {
     name: source.name,
     format: 'tcx',

@@ -54,7 +54,7 @@ export async function readXml(
   handler: XmlHandler,
 ): Promise<XmlEnd> {
   let damages = 0;
-  let givenUp: XmlDamage | null = null;
+  const state: { givenUp: XmlDamage | null; skipping: boolean } = { givenUp: null, skipping: false };
   let depth = 0;
   let text = '';
   let linesBefore = 0;
@@ -91,13 +91,12 @@ export async function readXml(
   let parser = start(false);
   // Characters given to this parser in earlier chunks.
   let given = 0;
-  let skipping = false;
   // The end of what was skipped, where a start tag may be cut by the end of a chunk.
   let tail = '';
   const feed = (chunk: string): void => {
     let rest = chunk;
-    while (rest !== '' && givenUp === null) {
-      if (skipping) {
+    while (rest !== '' && state.givenUp === null) {
+      if (state.skipping) {
         const searched = tail + rest;
         const found = searched.search(resumeAt);
         if (found < 0) {
@@ -108,7 +107,7 @@ export async function readXml(
         linesBefore += countNewlines(searched, 0, found);
         rest = searched.slice(found);
         tail = '';
-        skipping = false;
+        state.skipping = false;
         parser = start(true);
         given = 0;
       }
@@ -125,14 +124,14 @@ export async function readXml(
         };
         handler.damaged(damage);
         if (++damages >= MAX_DAMAGES) {
-          givenUp = damage;
+          state.givenUp = damage;
           return;
         }
         // At least one character on, or the same damage would be met for ever.
         const stop = Math.min(rest.length, Math.max(1, parser.position - given));
         linesBefore += parser.line - 1;
         rest = rest.slice(stop);
-        skipping = true;
+        state.skipping = true;
         tail = '';
       }
     }
@@ -145,11 +144,11 @@ export async function readXml(
     const end = last >= 0 && whole.length - last < LONGEST_ENTITY ? last : whole.length;
     held = whole.slice(end);
     feed(escapeStray(whole.slice(0, end)));
-    if (givenUp !== null) break;
+    if (state.givenUp !== null) break;
   }
-  if (givenUp === null) feed(escapeStray(held));
+  if (state.givenUp === null) feed(escapeStray(held));
   let cutOff = false;
-  if (givenUp === null && !skipping) {
+  if (state.givenUp === null && !state.skipping) {
     try {
       failure = null;
       parser.close();
@@ -158,7 +157,7 @@ export async function readXml(
       cutOff = true;
     }
   } else cutOff = true;
-  return { cutOff, givenUp, lines: linesBefore + parser.line };
+  return { cutOff, givenUp: state.givenUp, lines: linesBefore + parser.line };
 }
 
 class XmlStop extends Error {}

@@ -260,7 +260,7 @@ class DelimitedReader {
   #quality(text: string, { column }: PlannedColumn): number {
     const known = this.#qualities.get(text);
     if (known !== undefined) return known;
-    let quality = 255;
+    let quality: number;
     const value = decimal(text);
     if (Number.isNaN(value)) quality = QUALITY_WORDS.find(([word]) => word.test(text))?.[1] ?? 255;
     else if (/quality/i.test(this.#plan.headers[column]!)) quality = [0, 1, 2, 1, 4, 5, 3, 1, 1][value] ?? 255;

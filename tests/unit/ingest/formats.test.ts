@@ -184,7 +184,8 @@ describe('gzip', () => {
     expect((await refusalOf(gzipSync(Buffer.concat([seeds.get('csv')!, Buffer.alloc(80 << 20, '\n')])))).code).toBe(
       'ingest/archive-too-large',
     );
-    const cut = gzipSync(seeds.get('csv')!).subarray(0, 900);
+    const whole = gzipSync(seeds.get('csv')!);
+    const cut = whole.subarray(0, whole.length >> 1);
     expect((await refusalOf(cut)).code).toBe('ingest/damaged-archive');
   });
 
