@@ -43,7 +43,7 @@ export interface AnalysedRun {
 }
 
 export interface AnalysedRecording {
-  readonly recording: Omit<Recording, 'fixes' | 'sensors'> & { readonly fixCount: number };
+  readonly recording: Omit<Recording, 'fixes' | 'sensors' | 'findings'> & { readonly fixCount: number };
   readonly runs: readonly AnalysedRun[];
   readonly findings: readonly Finding[];
 }
@@ -65,7 +65,7 @@ const DEFAULT_SPACING_M = 5;
  * are listed in `refused`.
  */
 export async function analyseFile(path: string, options: AnalyseOptions): Promise<Analysis> {
-  const { name, columns, signal, onProgress } = options;
+  const { name, columns, signal } = options;
   let bytesRead = 0;
   const ingested = await ingestFile(path, {
     name,
@@ -73,7 +73,7 @@ export async function analyseFile(path: string, options: AnalyseOptions): Promis
     ...(signal === undefined ? {} : { signal }),
     onProgress(read, total) {
       bytesRead = read;
-      onProgress?.({
+      options.onProgress?.({
         stage: 'ingest',
         share: ENDS.ingest * (total > 0 ? read / total : 0),
         bytesRead: read,
@@ -86,7 +86,7 @@ export async function analyseFile(path: string, options: AnalyseOptions): Promis
   for (const [k, recording] of ingested.recordings.entries()) {
     const report = (stage: Progress['stage'], within: number) => {
       const share = ENDS.ingest + ((k + within) / ingested.recordings.length) * (1 - ENDS.ingest);
-      onProgress?.({ stage, share, bytesRead, curvesFound });
+      options.onProgress?.({ stage, share, bytesRead, curvesFound });
     };
     report('clean', 0);
     const cleaned = cleanRecording(recording);
@@ -105,14 +105,23 @@ export async function analyseFile(path: string, options: AnalyseOptions): Promis
       curvesFound += analysed.alignment.curves.length;
       runs.push(analysed);
     }
-    const { fixes, sensors: _sensors, ...rest } = recording;
+    const { name: member, format, bytes, encoding, title, waypoints, columns: uses } = recording;
     recordings.push({
-      recording: { ...rest, fixCount: fixes.count },
+      recording: {
+        name: member,
+        format,
+        bytes,
+        encoding,
+        title,
+        waypoints,
+        columns: uses,
+        fixCount: recording.fixes.count,
+      },
       runs,
       findings: [...recording.findings, ...cleaned.findings],
     });
   }
-  onProgress?.({ stage: 'alignment', share: 1, bytesRead, curvesFound });
+  options.onProgress?.({ stage: 'alignment', share: 1, bytesRead, curvesFound });
   return { recordings, refused: ingested.refused };
 }
 
@@ -124,15 +133,16 @@ interface RunOptions {
 }
 
 /** Run -> motion -> alignment -> passages and profile. */
-function analyseRun(run: Run, number: number, { spacingM, signal, report }: RunOptions): AnalysedRun {
+function analyseRun(run: Run, number: number, options: RunOptions): AnalysedRun {
+  const { spacingM, signal } = options;
   const estimateShare = (ENDS.estimate - ENDS.clean) / (ENDS.alignment - ENDS.clean);
   const estimated = estimateMotion(run, {
     ...(signal === undefined ? {} : { signal }),
     onProgress(share) {
-      report('estimate', share * estimateShare);
+      options.report('estimate', share * estimateShare);
     },
   });
-  report('alignment', estimateShare);
+  options.report('alignment', estimateShare);
   const fitted = fitAlignment(run, estimated.motion);
   const { motion, alignment } = fitted;
   let topSpeedMps = 0;

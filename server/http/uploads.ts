@@ -35,8 +35,8 @@ export function uploadReceiver(
     await requireRoom(store.raw.incoming, Number(request.headers['content-length'] ?? 0));
     await new Promise<void>((resolve, reject) => {
       receive(request, response, (error: unknown) => {
-        if (error === undefined || error === null) resolve();
-        else reject(error instanceof Error ? error : new Error(String(error)));
+        if (error instanceof Error) reject(error);
+        else resolve();
       });
     });
   };

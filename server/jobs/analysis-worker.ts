@@ -33,7 +33,7 @@ export default async function analyse({ path, name, columns, port }: AnalysisOrd
 
 /** The answer with buffers that change hands instead of being copied. */
 function handOver(answer: AnalysisAnswer, buffers: ArrayBuffer[]): unknown {
-  return move({ [transferableSymbol]: buffers, [valueSymbol]: answer } as unknown as Parameters<typeof move>[0]);
+  return move({ [transferableSymbol]: buffers, [valueSymbol]: answer });
 }
 
 /** The columns of all profiles. */

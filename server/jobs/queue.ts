@@ -33,11 +33,13 @@ export interface JobQueueOptions {
   readonly threads?: number;
   /** JavaScript file that the threads run. */
   readonly workerFile?: string;
+  /** JavaScript heap of a thread, MB. */
+  readonly heapMb?: number;
   /** Told of what went wrong inside; nobody waits for it. */
   onTrouble?(error: unknown): void;
 }
 
-/** JavaScript heap of a thread, MB, at most; columns lie outside the heap and are bounded by the count of fixes. */
+/** JavaScript heap of a thread, MB, on a machine that has twice that; columns lie outside the heap and are bounded by the count of fixes. */
 const MOST_HEAP_MB = 4096;
 /** A thread without work ends after this time and gives its memory back, ms. */
 const IDLE_MS = 20_000;
@@ -71,7 +73,9 @@ export class JobQueue extends EventEmitter<QueueEvents> {
       minThreads: 0,
       maxThreads: this.#threads,
       idleTimeout: IDLE_MS,
-      resourceLimits: { maxOldGenerationSizeMb: Math.min(MOST_HEAP_MB, Math.round(totalmem() / 2 ** 21)) },
+      resourceLimits: {
+        maxOldGenerationSizeMb: options.heapMb ?? Math.min(MOST_HEAP_MB, Math.round(totalmem() / 2 ** 21)),
+      },
     });
   }
 

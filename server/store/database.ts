@@ -3,7 +3,7 @@ import { existsSync } from 'node:fs';
 import { Kysely, SqliteDialect, type SqliteDatabase } from 'kysely';
 import { BendbookError } from '../../shared/model/fault.ts';
 import { migrate } from './migrations.ts';
-import { openSqlite, type SqliteConnection } from './sqlite.ts';
+import { closeSqlite, openSqlite, type SqliteConnection } from './sqlite.ts';
 import type { Tables } from './tables.ts';
 
 export interface Database {
@@ -22,16 +22,15 @@ export async function openDatabase(path: string): Promise<Database> {
   try {
     migrate(connection, path);
   } catch (error) {
-    connection.close();
+    closeSqlite(connection);
     throw error;
   }
   const db = new Kysely<Tables>({ dialect: new SqliteDialect({ database: asKyselyDatabase(connection) }) });
   return {
     db,
     async close() {
-      // Prepared statements keep the file open until they are collected; what the log holds is brought home here.
-      connection.exec('PRAGMA wal_checkpoint(TRUNCATE)');
       await db.destroy();
+      closeSqlite(connection);
     },
   };
 }
@@ -100,7 +99,8 @@ function openFault(path: string, error: unknown): BendbookError {
 /** node:sqlite under the interface that Kysely's dialect expects. */
 function asKyselyDatabase(connection: SqliteConnection): SqliteDatabase {
   return {
-    close: () => connection.close(),
+    // Closed by `Database.close`, which gives the lock back first.
+    close: () => undefined,
     prepare(sql) {
       const statement = connection.prepare(sql);
       const reader = /^\s*(select|with|pragma)\b/i.test(sql) || /\breturning\b/i.test(sql);

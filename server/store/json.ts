@@ -12,6 +12,7 @@ export function stringifyWire(value: unknown): string {
   });
 }
 
-export function parseWire<T>(text: string): T {
-  return JSON.parse(text, (_key, v: unknown) => MARKS.find(([mark]) => mark === v)?.[1] ?? v) as T;
+/** The value that `stringifyWire` made the text of. */
+export function parseWire(text: string): unknown {
+  return JSON.parse(text, (_key, v: unknown) => MARKS.find(([mark]) => mark === v)?.[1] ?? v);
 }

@@ -31,6 +31,18 @@ export async function openSqlite(path: string): Promise<SqliteConnection> {
   return connection;
 }
 
+/**
+ * Brings what the log holds home, gives the lock back and closes. Closing alone would keep file and lock
+ * until the last prepared statement is collected.
+ */
+export function closeSqlite(connection: SqliteConnection): void {
+  try {
+    connection.exec('PRAGMA journal_mode = DELETE; PRAGMA locking_mode = NORMAL; SELECT count(*) FROM sqlite_master');
+  } finally {
+    connection.close();
+  }
+}
+
 async function sqliteModule(): Promise<{ DatabaseSync: new (path: string) => SqliteConnection }> {
   const [major = 0, minor = 0] = process.versions.node.split('.').map(Number);
   if (major > 22 || (major === 22 && minor >= 13)) {
@@ -38,7 +50,5 @@ async function sqliteModule(): Promise<{ DatabaseSync: new (path: string) => Sql
     const builtIn = 'node:sqlite';
     return (await import(builtIn)) as { DatabaseSync: new (path: string) => SqliteConnection };
   }
-  return (await import('@photostructure/sqlite')) as unknown as {
-    DatabaseSync: new (path: string) => SqliteConnection;
-  };
+  return await import('@photostructure/sqlite');
 }

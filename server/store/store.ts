@@ -262,10 +262,10 @@ export class Store {
     if (row === undefined) return null;
     return {
       summary: runSummary(row),
-      quality: parseWire(row.quality_json),
-      findings: parseWire(row.findings_json),
-      alignment: parseWire(row.alignment_json),
-      passages: parseWire(row.passages_json),
+      quality: parseWire(row.quality_json) as LogQuality,
+      findings: parseWire(row.findings_json) as Finding[],
+      alignment: parseWire(row.alignment_json) as Alignment,
+      passages: parseWire(row.passages_json) as RunPassages,
     };
   }
 

@@ -84,12 +84,9 @@ interface RouterLike {
 
 /** "method /api/path" of every route under /api. */
 function listRoutes(router: RouterLike): string[] {
-  return router.stack.flatMap((layer) => {
-    if (layer.name !== 'router') return [];
-    return layer.handle.stack.flatMap(({ route }) =>
-      route === undefined
-        ? []
-        : [...new Set(route.stack.map(({ method }) => method))].map((m) => `${m} /api${route.path}`),
-    );
+  return router.stack.flatMap(({ name, handle, route }) => {
+    if (name === 'router') return listRoutes(handle);
+    if (route?.path.startsWith('/{*') !== false) return [];
+    return [...new Set(route.stack.map(({ method }) => method))].map((method) => `${method} /api${route.path}`);
   });
 }

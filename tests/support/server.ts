@@ -7,8 +7,9 @@ import type { z } from 'zod';
 import { ErrorBody, RecordingSummary, UploadResult } from '../../shared/schema/api.ts';
 import { ROOT } from './shared.ts';
 
-/** Folder of the built program: `dist`, or another that the environment names. */
-export const BUILD = process.env.BENDBOOK_BUILD ?? join(ROOT, 'dist');
+/** Folder of the built program: the one that this file was built into, else `dist`, or another that the environment names. */
+export const BUILD =
+  process.env.BENDBOOK_BUILD ?? (existsSync(join(ROOT, 'server/main.js')) ? ROOT : join(ROOT, 'dist'));
 
 export interface TestServer {
   readonly url: string;
