@@ -177,4 +177,14 @@ describe('dirty logs through the cleaning stage', () => {
     const expected = 0.04 * total((score) => score.curves);
     expect(total((score) => score.invented + score.splits)).toBeLessThanOrEqual(expected + 3 * Math.sqrt(expected));
   });
+
+  it('show at most one false hotspot in 500 km, at stops, tunnel mouths and bursts', () => {
+    const scores = [...results(), cell('straights', 1, true, 12, 'dirty').score];
+    const km = scores.reduce((sum, score) => sum + score.lengthKm, 0);
+    const hotspots = scores.reduce((sum, score) => sum + score.hotspots, 0);
+    // Poisson count: mean plus three of its standard deviations.
+    const expected = km / 500;
+    const notes = scores.flatMap((score) => score.notes.filter((note) => note.includes('hotspot')));
+    expect(hotspots, notes.join('\n')).toBeLessThanOrEqual(expected + 3 * Math.sqrt(expected));
+  });
 });
