@@ -8,7 +8,7 @@ import { Book } from './http/book.ts';
 import { JobQueue } from './jobs/queue.ts';
 import { Store } from './store/store.ts';
 
-export interface RunningServer {
+interface RunningServer {
   readonly address: string;
   readonly dataDir: string;
   close(): Promise<void>;
@@ -20,7 +20,7 @@ const GRACE_MS = 2000;
 const LONGEST_REQUEST_MS = 3_600_000;
 
 /** Opens the store, listens, takes up interrupted work. */
-export async function serve(configuration: Configuration): Promise<RunningServer> {
+async function serve(configuration: Configuration): Promise<RunningServer> {
   const store = await Store.open(configuration.dataDir, { recover: configuration.recover });
   const log = pino({ level: 'warn' }, pino.destination(2));
   const queue = new JobQueue(store, { onTrouble: (error) => log.error(error) });

@@ -90,15 +90,15 @@ function runName(base: string, recording: AnalysedRecording, run: AnalysedRun): 
 export function boundsOf(profile: Pick<Profile, 'count' | 'latDeg' | 'lonDeg'>): [number, number, number, number] {
   let [south, north, west, east] = [Infinity, -Infinity, Infinity, -Infinity];
   let shift = 0;
+  let last = NaN;
   for (let i = 0; i < profile.count; i++) {
     const lat = profile.latDeg[i]!;
     const lon = profile.lonDeg[i]!;
     if (!Number.isFinite(lat) || !Number.isFinite(lon)) continue;
-    if (i > 0) {
-      const step = lon - profile.lonDeg[i - 1]!;
-      if (step < -180) shift += 360;
-      else if (step > 180) shift -= 360;
-    }
+    // NaN at the first place: neither comparison holds.
+    if (lon - last < -180) shift += 360;
+    else if (lon - last > 180) shift -= 360;
+    last = lon;
     south = Math.min(south, lat);
     north = Math.max(north, lat);
     west = Math.min(west, lon + shift);

@@ -1,5 +1,5 @@
 /** The part of node:sqlite that the store uses; the package and the built-in share it. */
-export interface SqliteStatement {
+interface SqliteStatement {
   all(...parameters: unknown[]): unknown[];
   run(...parameters: unknown[]): { changes: number | bigint; lastInsertRowid: number | bigint };
   iterate(...parameters: unknown[]): IterableIterator<unknown>;
