@@ -82,7 +82,6 @@ function warmWorker(): Worker {
     workerData: { base: createRequire(import.meta.url).resolve('saxes') },
     resourceLimits: { maxOldGenerationSizeMb: 512 },
   });
-  started.unref();
   started.on('message', (answer: Answer) => waiting.get(answer.id)?.(answer));
   const fail = (reason: string) => {
     if (worker === started) worker = null;
@@ -94,6 +93,8 @@ function warmWorker(): Worker {
   started.on('exit', (code) => {
     fail(`the reader ended with code ${String(code)}`);
   });
+  // After the listeners: adding one to the port would hold the process again.
+  started.unref();
   worker = started;
   return started;
 }
@@ -114,8 +115,10 @@ export async function readGpxDetails(xml: string): Promise<{ details: GpxDetails
       clearTimeout(timer);
       resolve(settled);
     });
+    target.ref();
     target.postMessage({ id, xml });
   });
   waiting.delete(id);
+  if (waiting.size === 0) target.unref();
   return { details: answer.details, reason: answer.error };
 }
