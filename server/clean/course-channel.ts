@@ -7,7 +7,7 @@ const TAU = 2 * Math.PI;
 const RAD_PER_DEG = Math.PI / 180;
 
 /** Below this speed a course says nothing (its error is the Doppler error over the speed), m/s. */
-export const LEAST_COURSE_SPEED_MPS = 1.2;
+const LEAST_COURSE_SPEED_MPS = 1.2;
 /** Way between the fixes whose chord gives a direction, m. */
 const LEAST_CHORD_M = 12;
 const LEAST_CHORDS = 8;

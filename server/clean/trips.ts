@@ -5,7 +5,7 @@ import { sampledQuantile } from './quantiles.ts';
 import { pickTrack, placeOf, type Track } from './track.ts';
 
 /** No fix for longer than this ends a trip, s. Station stops and tunnels are shorter. */
-export const TRIP_GAP_S = 1200;
+const TRIP_GAP_S = 1200;
 /** No vehicle of interest is faster, m/s. */
 const MOST_SPEED_MPS = 120;
 /** Change of speed that no vehicle of interest exceeds in a moment, and one that none keeps up, m/s². */

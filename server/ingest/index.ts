@@ -10,14 +10,13 @@ import { FORMATS, type Head } from './formats.ts';
 import { DEFAULT_MAX_FIXES, type IngestOptions, type IngestResult, type ReadContext } from './options.ts';
 
 export type { DelimitedPreview } from './delimited/preview.ts';
-export { COLUMN_FIELDS } from './delimited/columns.ts';
 export type { IngestOptions, IngestResult } from './options.ts';
 
 /** Enough to see past a preamble and the first of other messages. */
 const HEAD_BYTES = 1 << 16;
 
 /** First bytes of a source for the recognisers. */
-export async function headOf(source: ByteSource): Promise<Head> {
+async function headOf(source: ByteSource): Promise<Head> {
   const bytes = await readHead(source, HEAD_BYTES);
   return { bytes, text: new TextDecoder(detectEncoding(bytes)).decode(bytes).replaceAll('\0', '') };
 }

@@ -1,5 +1,5 @@
 /** A line longer than this is not a line of a log. */
-export const MAX_LINE_BYTES = 1 << 20;
+const MAX_LINE_BYTES = 1 << 20;
 
 /**
  * Gathers chunks into blocks that end with the end of a line (LF, CR or CRLF), so that a reader never

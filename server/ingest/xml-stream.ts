@@ -11,7 +11,7 @@ const LONGEST_ENTITY = 34;
 /** Damaged places after which the rest of a file is given up. */
 const MAX_DAMAGES = 1000;
 
-export interface XmlDamage {
+interface XmlDamage {
   /** 1-based line of the file. */
   readonly line: number;
   readonly cause: string;

@@ -2,7 +2,7 @@ import { createRequire } from 'node:module';
 import { Worker } from 'node:worker_threads';
 
 /** A track point as gpxparser gives it. */
-export interface ReferencePoint {
+interface ReferencePoint {
   readonly lat: number;
   readonly lon: number;
   readonly ele: number | null;

@@ -2,7 +2,7 @@ import { BendbookError } from '../../../shared/model/fault.ts';
 import { UNITS, type Unit } from '../../../shared/units.ts';
 
 /** What a column of a delimited file can feed. */
-export const COLUMN_FIELDS = [
+const COLUMN_FIELDS = [
   'utcS',
   'date',
   'timeOfDay',

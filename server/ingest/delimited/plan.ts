@@ -58,12 +58,6 @@ interface Choice {
   rank: number;
 }
 
-/** First lines of a text, and its cells as the rows will be seen. */
-export interface Sample {
-  readonly lines: readonly string[];
-  readonly rows: readonly string[][];
-}
-
 const tidy = (cell: string) => cell.replaceAll('\0', '').trim();
 
 /**

@@ -7,11 +7,11 @@ import { courseFromDegrees, FixBuilder, wrapLongitude, type FloatChannel } from 
 import { lineBlocks } from '../line-blocks.ts';
 import type { ReadContext } from '../options.ts';
 import { angleFrom, parseAngle } from './angles.ts';
-import { factorOf, unitFor, type ColumnField } from './columns.ts';
+import { factorOf, unitFor } from './columns.ts';
 import { changedFixes, selectFixes } from './held.ts';
 import { planColumns, type Plan, type PlannedColumn } from './plan.ts';
 import { RowSplitter } from './row-splitter.ts';
-import { isSensorField, SensorBuilder } from './sensors.ts';
+import { SensorBuilder } from './sensors.ts';
 import { TimeReader, type RowCells } from './time-reader.ts';
 
 const HEAD_BYTES = 1 << 17;
@@ -28,18 +28,31 @@ const QUALITY_WORDS: readonly (readonly [RegExp, number])[] = [
   [/^(single|sps|gps|gnss|autonomous|2d|3d|a|valid|true|ok|pps|fix)$/i, 1],
 ];
 
-const FLOAT_FIELDS = new Set<ColumnField>([
-  'elevationM',
-  'speedMps',
-  'courseRad',
-  'accuracyM',
-  'hdop',
-  'speedAccuracyMps',
-  'courseAccuracyRad',
-]);
+/** A planned channel of the fixes with the way its cells are read, settled once and not for every cell. */
+type Channel = PlannedColumn &
+  (
+    | { readonly kind: 'satellites' | 'fixQuality' }
+    | { readonly kind: 'course' | 'positive' | 'signed'; readonly target: FloatChannel }
+  );
 
-function isFloatField(field: ColumnField): field is ColumnField & FloatChannel {
-  return FLOAT_FIELDS.has(field);
+function channelOf(planned: PlannedColumn): Channel | null {
+  switch (planned.field) {
+    case 'satellites':
+    case 'fixQuality':
+      return { ...planned, kind: planned.field };
+    case 'courseRad':
+      return { ...planned, kind: 'course', target: planned.field };
+    case 'elevationM':
+      return { ...planned, kind: 'signed', target: planned.field };
+    case 'speedMps':
+    case 'accuracyM':
+    case 'hdop':
+    case 'speedAccuracyMps':
+    case 'courseAccuracyRad':
+      return { ...planned, kind: 'positive', target: planned.field };
+    default:
+      return null;
+  }
 }
 
 /** First lines of a delimited file, as text. The last may be cut and is left out of longer files. */
@@ -77,7 +90,7 @@ class DelimitedReader {
   readonly #mark: number;
   readonly #time: TimeReader;
   readonly #sensorTime: TimeReader;
-  readonly #channels: readonly PlannedColumn[];
+  readonly #channels: readonly Channel[];
   readonly #sensorValues: Float64Array;
   readonly #sensorColumns: readonly number[];
   readonly #segments = new Map<string, number>();
@@ -95,7 +108,7 @@ class DelimitedReader {
     this.#sensorValues = new Float64Array(this.#sensorColumns.length);
     this.#time = new TimeReader(plan.time, this.#mark);
     this.#sensorTime = plan.sensorTime === null ? this.#time : new TimeReader(plan.sensorTime, this.#mark);
-    this.#channels = plan.channels.filter(({ field }) => !isSensorField(field));
+    this.#channels = plan.channels.map(channelOf).filter((channel) => channel !== null);
   }
 
   /** The last cell that any quantity needs. */
@@ -216,13 +229,13 @@ class DelimitedReader {
     return parseAngle(text);
   }
 
-  #channel(row: RowCells, planned: PlannedColumn): void {
-    const { column, field } = planned;
+  #channel(row: RowCells, planned: Channel): void {
+    const { column, kind } = planned;
     if (column >= row.count) return;
     const start = row.starts[column]!;
     const end = row.ends[column]!;
     if (start === end) return;
-    if (field === 'satellites') {
+    if (kind === 'satellites') {
       // "11(11)" is used and in view: leading digits.
       let digitsEnd = start;
       while (digitsEnd < end && row.bytes[digitsEnd]! >= 48 && row.bytes[digitsEnd]! <= 57) digitsEnd++;
@@ -230,20 +243,19 @@ class DelimitedReader {
       if (value >= 0 && value < 255) this.fixes.setByte('satellites', value);
       return;
     }
-    if (field === 'fixQuality') {
+    if (kind === 'fixQuality') {
       const quality = this.#quality(row.bytes.toString('latin1', start, end), planned);
       if (quality !== 255) this.fixes.setByte('fixQuality', quality);
       return;
     }
-    if (!isFloatField(field)) return;
+    if (!('target' in planned)) return;
     let value = readDecimal(row.bytes, start, end, this.#mark);
     if (Number.isNaN(value)) value = this.#withUnit(row, planned);
-    else if (field === 'courseRad') value = courseFromDegrees(planned.unit === 'rad' ? (value * 180) / Math.PI : value);
+    else if (kind === 'course') value = courseFromDegrees(planned.unit === 'rad' ? (value * 180) / Math.PI : value);
     else value *= planned.factor;
     if (Number.isNaN(value)) return;
-    if (value < 0 && field !== 'elevationM') return;
-    if (Math.abs(value) > 1e6) return;
-    this.fixes.set(field, value);
+    if ((value < 0 && kind !== 'signed') || Math.abs(value) > 1e6) return;
+    this.fixes.set(planned.target, value);
   }
 
   /** A number followed by its own unit, in SI. */

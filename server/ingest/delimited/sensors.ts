@@ -2,7 +2,7 @@ import type { ColumnUse, SensorColumns } from '../../../shared/model/recording.t
 import { STANDARD_GRAVITY_MPS2 } from '../../../shared/units.ts';
 import type { PlannedColumn } from './plan.ts';
 
-export const SENSOR_FIELDS = ['accelX', 'accelY', 'accelZ', 'gyroX', 'gyroY', 'gyroZ'] as const;
+const SENSOR_FIELDS = ['accelX', 'accelY', 'accelZ', 'gyroX', 'gyroY', 'gyroZ'] as const;
 export type SensorField = (typeof SENSOR_FIELDS)[number];
 
 export function isSensorField(field: string): field is SensorField {
