@@ -13,6 +13,7 @@ import type { CantRule, Setup } from '../shared/schema/setup.ts';
 import { profileTable, reportContext, type AssessableRun } from './assessment.ts';
 import { BUILT_IN, DEFAULT_SETUP } from './catalogue.ts';
 import { readConfiguration, SERVE_USAGE, wrongArguments } from './configuration.ts';
+import { noRunFault } from './no-run.ts';
 import { analyseFile } from './pipeline.ts';
 import {
   curveTableCsv,
@@ -138,16 +139,6 @@ async function readRecording(path: string, args: Arguments): Promise<{ runs: Ass
   for (const { fault } of analysis.refused) complain(fault);
   const without = analysis.recordings.filter((recording) => recording.runs.length === 0).length;
   return { runs, refused: analysis.refused.length + without };
-}
-
-function noRunFault(file: string, findings: AssessableRun['findings']): Fault {
-  const reasons = findings.filter(({ severity }) => severity !== 'info').map(({ message }) => message);
-  return {
-    code: 'clean/no-run',
-    cause: `no run in it could be used${reasons.length > 0 ? ` (${reasons.join('; ')})` : ''}`,
-    place: { file },
-    remedy: 'A run needs fixes with times along at least some hundred metres',
-  };
 }
 
 async function tableOf(

@@ -72,6 +72,9 @@ export function createApp(store: Store, queue: JobQueue, book: Book, options: Ap
     response.set('Cache-Control', 'no-store');
     next();
   });
+  // Results came or went: profiles made from the earlier ones are stale.
+  queue.on('recording', () => book.forgetTables());
+  queue.on('removed', () => book.forgetTables());
   app.use('/api', apiRoutes(store, queue, book, options.maxUploadBytes));
   servePage(app);
   app.use(faultHandler(options.maxUploadBytes, (error) => options.log.error(error)));

@@ -16,6 +16,8 @@ const READY_TABLES = 6;
 export class Book {
   readonly #store: Store;
   readonly #tables = new Map<string, ProfileTable>();
+  /** Counts up whenever tables become stale: one that was begun before is not kept. */
+  #generation = 0;
 
   constructor(store: Store) {
     this.#store = store;
@@ -99,15 +101,18 @@ export class Book {
 
   /** Documents or runs changed: tables made from them are stale. */
   forgetTables(): void {
+    this.#generation++;
     this.#tables.clear();
   }
 
   async table(runId: string): Promise<ProfileTable> {
     const ready = this.#tables.get(runId);
     if (ready !== undefined) return ready;
+    const generation = this.#generation;
     const run = await this.run(runId);
     const { setup } = await this.setupFor(run);
     const table = profileTable({ profile: await this.#store.profile(runId), passages: run.passages }, setup);
+    if (generation !== this.#generation) return table;
     if (this.#tables.size >= READY_TABLES) this.#tables.delete(this.#tables.keys().next().value!);
     this.#tables.set(runId, table);
     return table;

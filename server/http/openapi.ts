@@ -86,6 +86,7 @@ const PATHS: ZodOpenApiPathsObject = {
     delete: { requestParams: id, responses: json(api.Job, 'Cancelled') },
   },
   '/api/runs': { get: { responses: json(z.array(api.RunSummary)) } },
+  '/api/lines': { get: { responses: json(z.array(api.LineWire)) } },
   '/api/runs/{id}': { get: { requestParams: id, responses: json(api.RunDetail) } },
   '/api/runs/{id}/profile': {
     get: {

@@ -37,7 +37,6 @@ export function recordingRoutes(store: Store, queue: JobQueue, book: Book, maxUp
   routes.delete('/recordings/:id', async (request, response) => {
     const { id } = await recordingOf(request);
     await queue.remove(id);
-    book.forgetTables();
     response.status(204).end();
   });
   routes.get('/recordings/:id/raw', async (request, response) => {

@@ -1,6 +1,8 @@
 import { Router } from 'express';
+import { z } from 'zod';
 import * as api from '../../shared/schema/api.ts';
 import type { JobQueue } from '../jobs/queue.ts';
+import { Lines } from '../lines.ts';
 import { SOFTWARE } from '../package-root.ts';
 import type { Store } from '../store/store.ts';
 import type { Book } from './book.ts';
@@ -23,6 +25,10 @@ export function apiRoutes(store: Store, queue: JobQueue, book: Book, maxUploadBy
     await streamEvents(request, response, queue);
   });
   routes.use(recordingRoutes(store, queue, book, maxUploadBytes));
+  const lines = new Lines(store, queue);
+  routes.get('/lines', async (_request, response) => {
+    reply(response, z.array(api.LineWire), await lines.all());
+  });
   routes.use(runRoutes(store, book));
   routes.use(exportRoutes(book));
   routes.use(setupRoutes(store, book));

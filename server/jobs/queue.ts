@@ -6,11 +6,15 @@ import { fileURLToPath } from 'node:url';
 import { MessageChannel } from 'node:worker_threads';
 import { Piscina } from 'piscina';
 import type { Fault } from '../../shared/model/fault.ts';
+import type { Finding } from '../../shared/model/finding.ts';
+import type { Line } from '../../shared/model/line.ts';
 import type { Job, RecordingSummary } from '../../shared/schema/api.ts';
+import { noRunFault } from '../no-run.ts';
 import type { Analysis, Progress } from '../pipeline.ts';
 import type { Store } from '../store/store.ts';
 import { CANCELLED, crashFault, interruptedFault, storeFault } from './job-faults.ts';
 import type { AnalysisAnswer, AnalysisOrder } from './messages.ts';
+import type { LineOrder } from './lines-worker.ts';
 import { resultsOf } from './results.ts';
 
 interface QueueEvents {
@@ -69,7 +73,7 @@ export class JobQueue extends EventEmitter<QueueEvents> {
     this.#threads = options.threads ?? Math.max(1, availableParallelism() - 1);
     this.#onTrouble = options.onTrouble?.bind(options) ?? (() => undefined);
     this.#pool = new Piscina({
-      filename: options.workerFile ?? workerFile(),
+      filename: options.workerFile ?? builtFile('analysis-worker'),
       minThreads: 0,
       maxThreads: this.#threads,
       idleTimeout: IDLE_MS,
@@ -136,6 +140,17 @@ export class JobQueue extends EventEmitter<QueueEvents> {
     this.emit('closing');
     await this.#pool.destroy();
     await Promise.all([...this.#running.values()].map(({ settled }) => settled));
+  }
+
+  /** Groups runs into lines, in a thread after the analyses that wait for it. */
+  async fuse(runIds: readonly string[]): Promise<Line[]> {
+    const orders: LineOrder[] = [];
+    for (const runId of runIds) {
+      const run = await this.#store.run(runId);
+      if (run === null) continue;
+      orders.push({ runId, profilePath: this.#store.profilePath(runId), alignment: run.alignment });
+    }
+    return (await this.#pool.run(orders, { filename: builtFile('lines-worker') })) as Line[];
   }
 
   async #stopAll(recordingId: string): Promise<void> {
@@ -237,6 +252,10 @@ export class JobQueue extends EventEmitter<QueueEvents> {
     }
     const { facts, runs } = resultsOf(recording, analysis);
     await this.#store.saveAnalysis(recording.id, facts, runs);
+    if (runs.length === 0) {
+      await this.#finish(job, 'failed', noRunFault(recording.name, facts.findings as Finding[]));
+      return;
+    }
     const outcome = {
       state: 'done',
       stage: 'done',
@@ -271,8 +290,8 @@ export class JobQueue extends EventEmitter<QueueEvents> {
 }
 
 /** Threads load JavaScript: from sources (tests) the built file is taken. */
-function workerFile(): string {
-  const beside = fileURLToPath(new URL('./analysis-worker.js', import.meta.url));
+function builtFile(name: string): string {
+  const beside = fileURLToPath(new URL(`./${name}.js`, import.meta.url));
   if (existsSync(beside)) return beside;
-  return fileURLToPath(new URL('../../dist/server/jobs/analysis-worker.js', import.meta.url));
+  return fileURLToPath(new URL(`../../dist/server/jobs/${name}.js`, import.meta.url));
 }

@@ -40,14 +40,14 @@ export class ProfileFiles {
   }
 
   async write(runId: string, profile: Profile): Promise<void> {
-    const path = this.#path(runId);
+    const path = this.path(runId);
     await writeFile(`${path}.new`, encodeProfile(profile), { flush: true });
     await rename(`${path}.new`, path);
   }
 
   async read(runId: string): Promise<Profile> {
     try {
-      return decodeProfile(await readFile(this.#path(runId)));
+      return decodeProfile(await readFile(this.path(runId)));
     } catch (error) {
       throw new BendbookError(
         'store/result-missing',
@@ -61,7 +61,7 @@ export class ProfileFiles {
   }
 
   async remove(runId: string): Promise<void> {
-    await rm(this.#path(runId), { force: true });
+    await rm(this.path(runId), { force: true });
   }
 
   /** Removes files of runs that are no longer listed. */
@@ -71,7 +71,7 @@ export class ProfileFiles {
     }
   }
 
-  #path(runId: string): string {
+  path(runId: string): string {
     return join(this.#folder, `${runId}.bin`);
   }
 }

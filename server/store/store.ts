@@ -273,6 +273,11 @@ export class Store {
     return await this.#profiles.read(runId);
   }
 
+  /** Where the profile of a run lies, for a thread that reads it itself. */
+  profilePath(runId: string): string {
+    return this.#profiles.path(runId);
+  }
+
   async setLine(runId: string, lineId: string | null): Promise<void> {
     await this.#database.db.updateTable('runs').set({ line_id: lineId }).where('id', '=', runId).execute();
   }

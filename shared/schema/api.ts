@@ -10,7 +10,7 @@ import { Vehicle } from './vehicle.ts';
 
 export const ErrorBody = z.object({ fault: Fault });
 
-export const JobState = z.enum(['queued', 'running', 'done', 'failed', 'cancelled']);
+const JobState = z.enum(['queued', 'running', 'done', 'failed', 'cancelled']);
 
 export const Job = z.object({
   id: z.string(),
@@ -29,7 +29,7 @@ export const Job = z.object({
 });
 export type Job = z.infer<typeof Job>;
 
-export const ColumnUse = z.object({ header: z.string(), field: z.string(), unit: z.string(), guessed: z.boolean() });
+const ColumnUse = z.object({ header: z.string(), field: z.string(), unit: z.string(), guessed: z.boolean() });
 
 /** First rows of a delimited file and what its columns were taken for. */
 export const ColumnPreview = z.object({
@@ -98,7 +98,7 @@ const CurveEnd = z.object({
 });
 
 /** Shape of model/alignment.ts Curve; infinities travel as null. */
-export const CurveWire = z.object({
+const CurveWire = z.object({
   number: z.number(),
   hand: z.enum(['left', 'right']),
   shape: z.enum(['simple', 'compound', 'reverse', 'abrupt']),
@@ -118,7 +118,7 @@ export const CurveWire = z.object({
   remarks: z.array(z.string()),
 });
 
-export const PassageWire = z.object({
+const PassageWire = z.object({
   curve: CurveWire,
   chainageM: z.array(z.number()),
   speedMps: z.array(z.number()),
@@ -139,7 +139,7 @@ export const RunPassagesWire = z.object({
   passages: z.array(PassageWire),
 });
 
-export const Element = z.object({
+const Element = z.object({
   kind: z.enum(['straight', 'transition', 'arc']),
   startM: z.number(),
   endM: z.number(),
@@ -147,7 +147,7 @@ export const Element = z.object({
   endCurvaturePerM: z.number(),
 });
 
-export const LogQuality = z.object({
+const LogQuality = z.object({
   noise: z.object({
     sigmaWhiteM: z.number(),
     sigmaWanderM: z.number(),
@@ -178,6 +178,34 @@ export const RunDetail = z.object({
   setup: SetupRef,
 });
 export type RunDetail = z.infer<typeof RunDetail>;
+
+/** Shape of model/line.ts Line: runs over one alignment, and its curves as all of them see it; infinities and NaN travel as null. */
+export const LineWire = z.object({
+  id: z.string(),
+  referenceRunId: z.string(),
+  members: z.array(
+    z.object({
+      runId: z.string(),
+      direction: z.union([z.literal(1), z.literal(-1)]),
+      overlap: z.number(),
+      chainageM: z.array(z.number()),
+      lineChainageM: z.array(z.number()),
+    }),
+  ),
+  curves: z.array(
+    z.object({
+      number: z.number(),
+      hand: z.enum(['left', 'right']),
+      startM: z.number(),
+      endM: z.number(),
+      seen: z.array(z.object({ runId: z.string(), curve: z.number() })),
+      curvaturePerM: Estimate,
+      radiusM: Estimate,
+      consistency: z.number().nullable(),
+    }),
+  ),
+});
+export type LineWire = z.infer<typeof LineWire>;
 
 /** Columns of a window of the profile at a chosen resolution; NaN travels as null. Peaks of |utilisation| survive thinning. */
 export const ProfileWindow = z.object({

@@ -4,6 +4,7 @@ import { z } from 'zod';
 import {
   AssessmentBody,
   Catalogue,
+  LineWire,
   ProfileWindow,
   RecordingSummary,
   RunDetail,
@@ -77,6 +78,26 @@ describe('demonstration', () => {
     expect(road.setup).toMatchObject({ mode: 'road', registerId: null });
     expect(road.curves.every(({ row }) => row.side_friction !== null)).toBe(true);
     for (const { cautions } of [rail, road]) expect(cautions.length).toBeGreaterThan(0);
+  });
+});
+
+describe('lines', () => {
+  it('the four rail runs lie on one line, one of them the other way; the bus has its own', async () => {
+    const lines = await call(z.array(LineWire), `${server.url}/api/lines`);
+    expect(lines.map(({ members }) => members.length).sort()).toEqual([1, 4]);
+    const rail = lines.find(({ members }) => members.length === 4)!;
+    const named = new Map(recordings.map(({ name, runs }) => [runs[0]!.id, name]));
+    const opposite = rail.members.filter(({ direction }) => direction !== rail.members[0]!.direction);
+    const returning = rail.members.length - opposite.length === 1 ? rail.members.slice(0, 1) : opposite;
+    expect(returning.map(({ runId }) => named.get(runId))).toEqual(['rail-return-2025-04-02.gpx']);
+    // Nearly every curve is seen by all four.
+    const seenByAll = rail.curves.filter(({ seen }) => seen.length === 4);
+    expect(seenByAll.length).toBeGreaterThan(0.7 * runOf('rail').curveCount);
+    for (const { members, id } of lines) {
+      for (const { runId } of members) {
+        expect((await detailOf(runId)).summary.lineId).toBe(members.length > 1 ? id : null);
+      }
+    }
   });
 });
 

@@ -3,14 +3,15 @@ import { readFileSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import { parse } from 'csv-parse/sync';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
-import { AssessmentBody, ProfileWindow, RunDetail } from '../../shared/schema/api.ts';
+import { AssessmentBody, Job, ProfileWindow, RunDetail } from '../../shared/schema/api.ts';
 import { CURVE_COLUMNS } from '../../shared/schema/curve-row.ts';
 import { roundRow } from '../../shared/schema/curve-columns.ts';
-import { demoFile } from '../support/recordings.ts';
+import { demoFile, smallCsv } from '../support/recordings.ts';
 import { readZip } from '../support/zip.ts';
 import {
   BUILD,
   call,
+  jsonBody,
   makeFolder,
   removeFolders,
   settled,
@@ -132,6 +133,19 @@ describe('profile by window', () => {
     expect(s.at(-1)).toBeGreaterThanOrEqual(3000);
     expect(s.at(-1)).toBeLessThan(3010);
     expect((await window('from=1e9&to=2e9')).columns.s_m!.length).toBeLessThanOrEqual(1);
+  });
+
+  it('is that of the latest analysis', async () => {
+    const content = smallCsv(5);
+    const { id: recording } = (await upload(server, [{ name: 'twice.csv', content }])).recordings[0]!;
+    const run = (await settled(server, recording)).runs[0]!.id;
+    const profile = () => call(ProfileWindow, `${server.url}/api/runs/${run}/profile`);
+    const before = await profile();
+    // The speed said to be in km/h is no longer the speed of the positions.
+    const columns = { speed: { header: 'speed_ms', unit: 'km/h' } };
+    await call(Job, `${server.url}/api/recordings/${recording}/columns`, jsonBody('PUT', columns));
+    await settled(server, recording);
+    expect((await profile()).columns.speed_sd_ms).not.toEqual(before.columns.speed_sd_ms);
   });
 
   it('refuses a window that is none', async () => {

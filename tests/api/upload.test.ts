@@ -158,6 +158,15 @@ describe('upload of recordings', () => {
     expect(await filesIn('incoming')).toEqual([]);
   });
 
+  it('refuses a recording in which nothing moves, and says what was found', async () => {
+    const rows = Array.from({ length: 60 }, (_, t) => `${new Date(Date.UTC(2025, 4, 6, 7, 0, t)).toISOString()},50,8`);
+    const content = `time,lat,lon\n${rows.join('\n')}\n`;
+    const { id } = (await upload(server, [{ name: 'parked.csv', content }])).recordings[0]!;
+    const parked = await settled(server, id);
+    expect(parked).toMatchObject({ state: 'refused', fault: { code: 'clean/no-run' }, runs: [], fixCount: 60 });
+    expect(parked.fault!.remedy).toContain('some hundred metres');
+  });
+
   it('shows names as text only: no folders, no control characters', async () => {
     // A form writes a line break within a name as %0A (HTML Standard, multipart/form-data encoding algorithm).
     const form = '--b\r\nContent-Disposition: form-data; name="file"; filename="../../etc/<b>ü%0A.csv"\r\n\r\n';
