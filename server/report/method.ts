@@ -37,7 +37,7 @@ export function methodLines(context: ReportContext): string[] {
   ];
 }
 
-export const METHOD: readonly string[] = [
+const METHOD: readonly string[] = [
   'Fixes are cleaned (order, repeats, jumps, standstill); what was dropped is counted in the findings.',
   'A fixed-interval smoother with a motion model estimates position, course, speed and curvature; noise levels are estimated from the log itself, and Doppler course and speed are used where the log has them.',
   'Straights, transitions and circular arcs are then fitted to the fixes themselves by least squares, with the slowly wandering error of the receiver modelled; standard errors come from the full information matrix.',

@@ -1,7 +1,7 @@
 import { roundTo } from '../../shared/schema/curve-columns.ts';
 
 /** Columns of the resampled profile in their order, with the decimals given. */
-export const PROFILE_COLUMNS: readonly (readonly [name: string, decimals: number])[] = [
+const PROFILE_COLUMNS: readonly (readonly [name: string, decimals: number])[] = [
   ['s_m', 2],
   ['t_s', 3],
   ['lat', 8],

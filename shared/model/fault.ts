@@ -1,14 +1,14 @@
 /** Where something went wrong: as much of it as is known. */
 export interface Place {
-  readonly file?: string;
+  readonly file?: string | undefined;
   /** 1-based line of a text file. */
-  readonly line?: number;
+  readonly line?: number | undefined;
   /** 0-based byte offset. */
-  readonly byte?: number;
-  readonly column?: string;
+  readonly byte?: number | undefined;
+  readonly column?: string | undefined;
   /** Unix seconds, UTC. */
-  readonly utcS?: number;
-  readonly chainageM?: number;
+  readonly utcS?: number | undefined;
+  readonly chainageM?: number | undefined;
 }
 
 /** A failure as data: told to the user as cause, place and remedy. */

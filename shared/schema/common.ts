@@ -1,6 +1,6 @@
 import { z } from 'zod';
 
-export const Place = z.object({
+const Place = z.object({
   file: z.string().optional(),
   line: z.number().optional(),
   byte: z.number().optional(),

@@ -12,7 +12,7 @@ interface Found {
  * must fail loudly rather than pass unseen.
  */
 export async function launchBrowser(): Promise<Browser> {
-  const { findBrowser } = (await import('../../scripts/browser.mjs' as string)) as {
+  const { findBrowser } = (await import('../../scripts/browser.mjs')) as {
     findBrowser: () => Promise<Found>;
   };
   const found = await findBrowser();

@@ -3,7 +3,7 @@ import type { ProfileTable } from '../../server/report/index.ts';
 import type { AssessedCurve, CurveRow } from '../../shared/schema/curve-row.ts';
 
 /** A row with every column filled; tests override what they look at. */
-export function fixtureRow(changes: Partial<CurveRow> = {}): CurveRow {
+function fixtureRow(changes: Partial<CurveRow> = {}): CurveRow {
   return {
     run: 'r1',
     curve: 1,

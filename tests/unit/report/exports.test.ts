@@ -57,7 +57,7 @@ describe('exports of the curve table', () => {
     const geo = curveTableGeoJson(context).features[0]!.properties as unknown as Record<string, unknown>;
     for (const key of CURVE_COLUMNS) {
       expect(geo[key], key).toEqual(json[key]);
-      expect(json[key] === null ? '' : String(json[key]), key).toBe(csv![key]);
+      expect(json[key] === null ? '' : `${json[key] as string | number}`, key).toBe(csv![key]);
     }
   });
 
