@@ -1,6 +1,9 @@
 /** How positions are written. */
 export type AngleForm = 'degrees' | 'degrees-minutes' | 'e7' | 'e6';
 
+/** No position is longer; patterns with several runs of blanks must not meet a thousand of them. */
+const LONGEST = 64;
+
 const HEMISPHERE = /^([NSEWO])\s*|\s*([NSEWO])$/i;
 const PARTS =
   /^([+-]?)(\d+(?:[.,]\d+)?)(?:\s*[°ºd:\s]\s*(?:(\d+(?:[.,]\d+)?)(?:\s*['′’m:\s]\s*(?:(\d+(?:[.,]\d+)?)\s*(?:["″”s]|'')?)?)?)?)?\s*['′’]?$/i;
@@ -11,6 +14,7 @@ const PARTS =
  */
 export function parseAngle(text: string): number {
   let rest = text.trim();
+  if (rest.length > LONGEST) return NaN;
   let sign = 1;
   const hemisphere = HEMISPHERE.exec(rest);
   if (hemisphere !== null) {

@@ -27,8 +27,9 @@ const NO_DATE: DatePart = { days: NaN, length: 0 };
 
 /** A date at the start of `text`, in the given order where it is all numbers. */
 export function parseDate(text: string, order: DateOrder): DatePart {
-  const weekday = WEEKDAY.exec(text)?.[0].length ?? 0;
-  const rest = weekday > 0 ? text.slice(weekday) : text;
+  // The time may follow the date: only its own part is looked at.
+  const weekday = WEEKDAY.exec(text.slice(0, LONGEST))?.[0].length ?? 0;
+  const rest = text.slice(weekday, weekday + LONGEST);
   const part = (match: RegExpExecArray, year: number, month: number, day: number): DatePart => ({
     days: checkedDays(fullYear(year), month, day),
     length: weekday + match[0].length,
@@ -69,6 +70,7 @@ const CLOCK =
 
 /** A time of day filling `text`: `09:12:49.4`, `9:12 pm`, `091249.4`, `74852200` (hhmmss and milliseconds). */
 export function parseClock(text: string): ClockPart {
+  if (text.length > LONGEST) return { seconds: NaN, zoned: false };
   const match = CLOCK.exec(text);
   if (match !== null) {
     let hour = Number(match[1]);

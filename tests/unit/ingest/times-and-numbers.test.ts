@@ -106,6 +106,16 @@ describe('dates', () => {
   });
 });
 
+describe('cells without end', () => {
+  it('are refused at once, not searched for ever', () => {
+    // Cells like these once took half a minute each.
+    const blanks = ' '.repeat(5000);
+    expect(parseClock(`12:00:00${blanks}x`).seconds).toBeNaN();
+    expect(parseDate(`17 May${blanks}x`, 'dmy').days).toBeNaN();
+    expect(parseAngle(`47${blanks}x`)).toBeNaN();
+  });
+});
+
 describe('numbers', () => {
   const bytes = (text: string) => new TextEncoder().encode(text);
   const read = (text: string, mark?: number) => readDecimal(bytes(text), 0, text.length, mark);
