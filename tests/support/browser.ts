@@ -1,19 +1,11 @@
 import { chromium, type Browser } from 'playwright-core';
-
-interface Found {
-  path: string | null;
-  env: Record<string, string>;
-  reason: string;
-  remedy: string;
-}
+import { findBrowser } from '../../scripts/browser.mjs';
 
 /**
  * Starts a real Chromium, headless. Throws with the remedy when none can be had: browser tests
  * must fail loudly rather than pass unseen.
  */
 export async function launchBrowser(): Promise<Browser> {
-  const { findBrowser } = (await import('../../scripts/browser.mjs')) as {
-    findBrowser: () => Promise<Found>;
   };
   const found = await findBrowser();
   if (found.path === null) throw new Error(`No browser for the browser tests: ${found.reason}. ${found.remedy}`);

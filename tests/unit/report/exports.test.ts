@@ -24,6 +24,11 @@ const CONTRACT =
   'ball_bank_deg,pct_seated,pct_standing,verdict,governing_criterion,value,limit,utilisation,complying_speed_kmh,' +
   'complying_cant_mm,time_cost_s,notes';
 
+/** Rows of a CSV by its header, through a parser that is not ours. */
+function rowsOf(csv: string): Record<string, string>[] {
+  return parse<Record<string, string>>(csv, { columns: true });
+}
+
 describe('exports of the curve table', () => {
   it('the columns are those of the contract, in its order', () => {
     expect(CURVE_COLUMNS.join(',')).toBe(CONTRACT);
@@ -31,7 +36,7 @@ describe('exports of the curve table', () => {
 
   it('CSV read back by an independent parser gives the rounded rows, unknown values empty', () => {
     const context = fixtureContext([fixtureCurve(), fixtureCurve({ curve: 2, cant_mm: null, verdict: 'within' })]);
-    const rows = parse(curveTableCsv(context), { columns: true }) as Record<string, string>[];
+    const rows = rowsOf(curveTableCsv(context));
     expect(rows).toHaveLength(2);
     expect(Object.keys(rows[0]!).join(',')).toBe(`${CONTRACT},caution`);
     expect(rows[0]).toMatchObject({ radius_m: '412.3', lateral_track_ms2: '1.111', verdict: 'over', cant_mm: '80' });
@@ -41,7 +46,7 @@ describe('exports of the curve table', () => {
 
   it('text that a spreadsheet would run as a formula is disarmed in CSV and XLSX', async () => {
     const context = fixtureContext([fixtureCurve({ run: '=HYPERLINK("x")', notes: '@SUM(A1)\u0000' })]);
-    const [row] = parse(curveTableCsv(context), { columns: true }) as Record<string, string>[];
+    const [row] = rowsOf(curveTableCsv(context));
     expect(row!.run).toBe(`'=HYPERLINK("x")`);
     expect(row!.notes).toBe(`'@SUM(A1)`);
     const files = await readZip(await curveTableXlsx(context));
@@ -52,7 +57,7 @@ describe('exports of the curve table', () => {
 
   it('JSON, GeoJSON and CSV carry the same numbers under the same names', () => {
     const context = fixtureContext([fixtureCurve()]);
-    const [csv] = parse(curveTableCsv(context), { columns: true }) as Record<string, string>[];
+    const [csv] = rowsOf(curveTableCsv(context));
     const json = curveTableJson(context).curves[0]! as unknown as Record<string, unknown>;
     const geo = curveTableGeoJson(context).features[0]!.properties as unknown as Record<string, unknown>;
     for (const key of CURVE_COLUMNS) {
