@@ -6,7 +6,6 @@ import { findBrowser } from '../../scripts/browser.mjs';
  * must fail loudly rather than pass unseen.
  */
 export async function launchBrowser(): Promise<Browser> {
-  };
   const found = await findBrowser();
   if (found.path === null) throw new Error(`No browser for the browser tests: ${found.reason}. ${found.remedy}`);
   return await chromium.launch({
