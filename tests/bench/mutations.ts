@@ -128,7 +128,7 @@ async function check(path: string): Promise<{ read: boolean; wrong: string | nul
       return { read: false, wrong: `fault without code, cause or remedy: ${JSON.stringify(fault)}` };
     }
     if (fault.place.file === undefined) return { read: false, wrong: 'fault without a place' };
-    if (/is not a function|undefined|Cannot read|of null|Invalid (?:array|typed)/.test(fault.cause)) {
+    if (/is not a function|is not defined|undefined|Cannot read|of null|Invalid (?:array|typed)/.test(fault.cause)) {
       return { read: false, wrong: `a programming error shows as a fault: ${fault.cause}` };
     }
   }

@@ -3,6 +3,9 @@ import { checkedDays, checkedSeconds, fullYear } from '../timestamp.ts';
 /** Order of day and month in dates of numbers. */
 export type DateOrder = 'ymd' | 'dmy' | 'mdy';
 
+/** No time of day or date is longer; patterns with several runs of blanks must not meet a thousand of them. */
+const LONGEST = 64;
+
 const MONTHS = ['jan', 'feb', 'mar', 'apr', 'may', 'jun', 'jul', 'aug', 'sep', 'oct', 'nov', 'dec'];
 
 /** 1..12 from an English month name or its first three letters; NaN otherwise. */
