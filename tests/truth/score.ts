@@ -97,7 +97,8 @@ export function emptyScore(): Score {
 export function attainableMedian({ boundRelative }: Score): number {
   if (boundRelative.length === 0) return Number.NaN;
   let low = 0;
-  let high = Math.max(...boundRelative);
+  // A curve that its fixes do not determine has an infinite bound; no median error is shown above 100 %.
+  let high = 1;
   for (let i = 0; i < 50; i += 1) {
     const middle = (low + high) / 2;
     // Share of |error| below `middle`: 2 Phi(x / sd) - 1 = erf(x / (sd sqrt 2)).
