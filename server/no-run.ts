@@ -2,7 +2,7 @@ import type { Fault } from '../shared/model/fault.ts';
 import type { Finding } from '../shared/model/finding.ts';
 
 /** Why a recording that was read gave no run: the findings that dropped or split its fixes. */
-export function noRunFault(file: string, findings: readonly Finding[]): Fault {
+export function noRunFault(file: string, findings: readonly Pick<Finding, 'severity' | 'message'>[]): Fault {
   const reasons = findings.filter(({ severity }) => severity !== 'info').map(({ message }) => message);
   return {
     code: 'clean/no-run',

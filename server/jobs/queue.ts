@@ -2,13 +2,14 @@ import { randomUUID } from 'node:crypto';
 import { EventEmitter } from 'node:events';
 import { existsSync } from 'node:fs';
 import { availableParallelism, totalmem } from 'node:os';
+import { basename, join } from 'node:path';
 import { fileURLToPath } from 'node:url';
 import { MessageChannel } from 'node:worker_threads';
 import { Piscina } from 'piscina';
 import type { Fault } from '../../shared/model/fault.ts';
-import type { Finding } from '../../shared/model/finding.ts';
 import type { Line } from '../../shared/model/line.ts';
 import type { Job, RecordingSummary } from '../../shared/schema/api.ts';
+import { PACKAGE_ROOT } from '../package-root.ts';
 import { noRunFault } from '../no-run.ts';
 import type { Analysis, Progress } from '../pipeline.ts';
 import type { Store } from '../store/store.ts';
@@ -73,7 +74,7 @@ export class JobQueue extends EventEmitter<QueueEvents> {
     this.#threads = options.threads ?? Math.max(1, availableParallelism() - 1);
     this.#onTrouble = options.onTrouble?.bind(options) ?? (() => undefined);
     this.#pool = new Piscina({
-      filename: options.workerFile ?? builtFile('analysis-worker'),
+      filename: options.workerFile ?? builtFile(new URL('./analysis-worker.js', import.meta.url)),
       minThreads: 0,
       maxThreads: this.#threads,
       idleTimeout: IDLE_MS,
@@ -150,7 +151,9 @@ export class JobQueue extends EventEmitter<QueueEvents> {
       if (run === null) continue;
       orders.push({ runId, profilePath: this.#store.profilePath(runId), alignment: run.alignment });
     }
-    return (await this.#pool.run(orders, { filename: builtFile('lines-worker') })) as Line[];
+    return (await this.#pool.run(orders, {
+      filename: builtFile(new URL('./lines-worker.js', import.meta.url)),
+    })) as Line[];
   }
 
   async #stopAll(recordingId: string): Promise<void> {
@@ -253,7 +256,7 @@ export class JobQueue extends EventEmitter<QueueEvents> {
     const { facts, runs } = resultsOf(recording, analysis);
     await this.#store.saveAnalysis(recording.id, facts, runs);
     if (runs.length === 0) {
-      await this.#finish(job, 'failed', noRunFault(recording.name, facts.findings as Finding[]));
+      await this.#finish(job, 'failed', noRunFault(recording.name, facts.findings));
       return;
     }
     const outcome = {
@@ -290,8 +293,7 @@ export class JobQueue extends EventEmitter<QueueEvents> {
 }
 
 /** Threads load JavaScript: from sources (tests) the built file is taken. */
-function builtFile(name: string): string {
-  const beside = fileURLToPath(new URL(`./${name}.js`, import.meta.url));
-  if (existsSync(beside)) return beside;
-  return fileURLToPath(new URL(`../../dist/server/jobs/${name}.js`, import.meta.url));
+function builtFile(beside: URL): string {
+  const path = fileURLToPath(beside);
+  return existsSync(path) ? path : join(PACKAGE_ROOT, 'dist/server/jobs', basename(path));
 }

@@ -73,12 +73,13 @@ export class RawFiles {
 
   /** Takes over an uploaded temporary file. On return it is on the disk under its final name. */
   async keep(temporary: string, sidecar: Sidecar): Promise<void> {
-    await flush(temporary);
+    await flush(temporary, 'r+');
     await rename(temporary, this.path(sidecar.id));
     const json = join(this.#folder, `${sidecar.id}.json`);
     await writeFile(`${json}.new`, JSON.stringify(sidecar), { flush: true });
     await rename(`${json}.new`, json);
-    await flush(this.#folder);
+    // Windows brings a renamed entry to the disk with its file and does not open folders.
+    if (process.platform !== 'win32') await flush(this.#folder, 'r');
   }
 
   async remove(id: string): Promise<void> {
@@ -123,8 +124,8 @@ async function describeRaw(id: string, path: string): Promise<Sidecar> {
   return { id, name: id, title: null, bytes, sha256, uploadedUtcS, demo: false, mode: null, columns: {} };
 }
 
-async function flush(path: string): Promise<void> {
-  const handle = await open(path, 'r');
+async function flush(path: string, flags: 'r' | 'r+'): Promise<void> {
+  const handle = await open(path, flags);
   try {
     await handle.sync();
   } finally {
