@@ -32,13 +32,17 @@ export async function removeFolders(): Promise<void> {
   for (const folder of folders.splice(0)) await rm(folder, { recursive: true, force: true });
 }
 
-/** Starts the built server as its users do, on a free port, and waits for its line. Throws with its output when it ends instead. */
+/** Starts the built server as its users do, on any free port unless `args` name one, and waits for its line. Throws with its output when it ends instead. */
 export async function startServer(dataDir: string, args: readonly string[] = []): Promise<TestServer> {
   const main = join(BUILD, 'server/main.js');
   if (!existsSync(main)) throw new Error(`${main} is not there: run "npm run build" first`);
-  const child = spawn(process.execPath, [main, '--port', '0', '--data', dataDir, ...args], {
-    stdio: ['ignore', 'pipe', 'pipe'],
-  });
+  const child = spawn(
+    process.execPath,
+    [main, ...(args.includes('--port') ? [] : ['--port', '0']), '--data', dataDir, ...args],
+    {
+      stdio: ['ignore', 'pipe', 'pipe'],
+    },
+  );
   let text = '';
   const ended = new Promise<number | null>((resolve) => child.on('exit', resolve));
   const url = await new Promise<string>((resolve, reject) => {
