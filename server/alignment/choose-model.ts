@@ -7,11 +7,9 @@ const LEAST_EVIDENCE = 9;
 const DEFLECTION_TOLL = 7;
 
 /** Value of a level over its variance, of its deflection likewise, whichever speaks more for the curve. */
-export function evidenceOf(fit: StretchFit, k: number): number {
-  const { stretch, layout } = fit;
-  const kappa = stretch.levels[k]!;
+function evidenceOf(fit: StretchFit, k: number): number {
+  const kappa = fit.stretch.levels[k]!;
   const { deflection, deflectionVariance, variance } = deflectionOf(fit, k);
-  void layout;
   return Math.max((kappa * kappa) / variance, (deflection * deflection) / deflectionVariance - DEFLECTION_TOLL);
 }
 
@@ -35,65 +33,96 @@ export function deflectionOf(fit: StretchFit, k: number) {
   };
 }
 
+/** A simpler stretch with the evidence against it: small where the part that falls is hardly told from nothing. */
+export interface Simplification {
+  readonly evidence: number;
+  readonly stretch: Stretch;
+}
+
 /**
- * The next simpler stretch, when some part of a fit is not told from nothing: the weakest level falls, or the two neighbours that
- * differ least become one. Null when everything stands; a stretch without levels when nothing is left of it.
+ * Simpler stretches that a fit suggests, the least missed first: a level that is not told from nothing falls, neighbours that
+ * hardly differ become one, a level in the middle of a change belongs to the change, a straight shorter than it is sure of goes.
+ * The refit decides: these are linear approximations, and those of a bad fit mislead.
  */
-export function simplify(fit: StretchFit): Stretch | null {
+export function simplifications(fit: StretchFit): Simplification[] {
   const { stretch, layout, covariance } = fit;
   const n = layout.size;
-  let weakest = LEAST_EVIDENCE;
-  let act: (() => Stretch) | null = null;
+  const found: Simplification[] = [];
   for (let k = 0; k < stretch.levels.length; k++) {
-    if (stretch.straight[k]!) continue;
+    if (stretch.straight[k]!) {
+      if (k === 0 || k + 1 === stretch.levels.length) continue;
+      const [c1, c2] = [layout.middle[k]!, layout.middle[k + 1]!];
+      const taken = (changeLength(stretch.squares[k]!) + changeLength(stretch.squares[k + 1]!)) / 2;
+      const gap = stretch.middles[k + 1]! - stretch.middles[k]! - taken;
+      const variance = covariance[c1 * n + c1]! + covariance[c2 * n + c2]! - 2 * covariance[c1 * n + c2]!;
+      const evidence = (gap * gap) / Math.max(1e-6, variance);
+      if (evidence < 4) found.push({ evidence, stretch: withoutStraight(stretch, k) });
+      continue;
+    }
     const evidence = evidenceOf(fit, k);
-    if (evidence < weakest) {
-      weakest = evidence;
-      act = () => withoutLevel(stretch, k);
-    }
+    if (evidence < LEAST_EVIDENCE) found.push({ evidence, stretch: withoutLevel(stretch, k) });
+    if (isTransient(fit, k)) found.push({ evidence: LEAST_EVIDENCE / 2, stretch: withoutLevel(stretch, k) });
     const next = k + 1;
-    if (next < stretch.levels.length && !stretch.straight[next]!) {
-      const [p, q] = [layout.level[k]!, layout.level[next]!];
-      const difference = stretch.levels[next]! - stretch.levels[k]!;
-      const variance = covariance[p * n + p]! + covariance[q * n + q]! - 2 * covariance[p * n + q]!;
-      const contrast = (difference * difference) / Math.max(1e-20, variance);
-      if (contrast < weakest) {
-        weakest = contrast;
-        act = () => merged(stretch, k);
-      }
-      const between = transient(fit, k);
-      if (between !== null) act ??= between;
-    }
+    if (next >= stretch.levels.length || stretch.straight[next]!) continue;
+    const [p, q] = [layout.level[k]!, layout.level[next]!];
+    const difference = stretch.levels[next]! - stretch.levels[k]!;
+    const variance = covariance[p * n + p]! + covariance[q * n + q]! - 2 * covariance[p * n + q]!;
+    const contrast = (difference * difference) / Math.max(1e-20, variance);
+    if (contrast < LEAST_EVIDENCE) found.push({ evidence: contrast, stretch: merged(stretch, k) });
   }
-  for (let k = 0; k < stretch.levels.length; k++) {
-    if (!stretch.straight[k]!) continue;
-    // A straight in the middle shorter than twice its own sd: the neighbours join directly.
-    const [c1, c2] = [layout.middle[k]!, layout.middle[k + 1]!];
-    const gap =
-      stretch.middles[k + 1]! -
-      stretch.middles[k]! -
-      (changeLength(stretch.squares[k]!) + changeLength(stretch.squares[k + 1]!)) / 2;
-    const sd = Math.sqrt(
-      Math.max(0, covariance[c1 * n + c1]! + covariance[c2 * n + c2]! - 2 * covariance[c1 * n + c2]!),
-    );
-    if (gap < 2 * sd && k > 0 && k + 1 < stretch.levels.length) act ??= () => withoutStraight(stretch, k);
-  }
-  return act === null ? null : act();
+  return found.sort((a, b) => a.evidence - b.evidence);
 }
 
 /** A level between two others that goes on in the same sense and is shorter than it is sure of: part of a transition. */
-function transient(fit: StretchFit, k: number): (() => Stretch) | null {
+function isTransient(fit: StretchFit, k: number): boolean {
   const { stretch, layout, covariance } = fit;
   const n = layout.size;
   const before = k > 0 ? stretch.levels[k - 1]! : 0;
   const own = stretch.levels[k]!;
   const after = stretch.levels[k + 1] ?? 0;
-  if ((own - before) * (after - own) <= 0) return null;
+  if ((own - before) * (after - own) <= 0) return false;
   const [c1, c2] = [layout.middle[k]!, layout.middle[k + 1]!];
   const length = stretch.middles[k + 1]! - stretch.middles[k]!;
-  const sd = Math.sqrt(Math.max(0, covariance[c1 * n + c1]! + covariance[c2 * n + c2]! - 2 * covariance[c1 * n + c2]!));
-  if (length > 2.5 * sd) return null;
-  return () => withoutLevel(stretch, k);
+  const variance = covariance[c1 * n + c1]! + covariance[c2 * n + c2]! - 2 * covariance[c1 * n + c2]!;
+  return length * length <= 6.25 * Math.max(0, variance);
+}
+
+/**
+ * Richer stretches for a fit that leaves too much unexplained: each level in turn as two levels, or as two with a straight between.
+ */
+export function divisions(fit: StretchFit): Stretch[] {
+  const out: Stretch[] = [];
+  const { stretch } = fit;
+  for (let k = 0; k < stretch.levels.length; k++) {
+    const [a, b] = [stretch.middles[k]!, stretch.middles[k + 1]!];
+    if (stretch.straight[k]! || b - a < 20) continue;
+    const kappa = stretch.levels[k]!;
+    const short = Math.min(changeLength(stretch.squares[k]!), (b - a) / 6) ** 2;
+    for (const share of [0.35, 0.65]) {
+      const two = copyStretch(stretch);
+      two.levels.splice(k, 1, kappa * (share < 0.5 ? 1.3 : 0.8), kappa * (share < 0.5 ? 0.8 : 1.3));
+      two.straight.splice(k, 1, false, false);
+      two.middles.splice(k + 1, 0, a + share * (b - a));
+      two.squares.splice(k + 1, 0, short);
+      out.push(two);
+    }
+    const parted = copyStretch(stretch);
+    parted.levels.splice(k, 1, kappa * 1.3, 0, kappa * 1.3);
+    parted.straight.splice(k, 1, false, true, false);
+    parted.middles.splice(k + 1, 0, a + 0.36 * (b - a), a + 0.64 * (b - a));
+    parted.squares.splice(k + 1, 0, short, short);
+    out.push(parted);
+  }
+  return out;
+}
+
+/** The same stretch with shorter and with longer changes: other minima to start from. */
+export function restarts(stretch: Stretch): Stretch[] {
+  return [0.08, 5].map((factor) => {
+    const other = copyStretch(stretch);
+    for (let j = 0; j < other.squares.length; j++) other.squares[j] = Math.max(1, other.squares[j]! * factor);
+    return other;
+  });
 }
 
 /** Level k gone: its two changes become one in their middle; with nothing but straights beside it, they become one straight. */

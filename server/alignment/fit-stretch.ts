@@ -12,6 +12,8 @@ export interface StretchFit {
   /** Row-major, layout.size squared; scaled by the residual variance where that exceeds one. */
   readonly covariance: Float64Array;
   readonly chi2PerDof: number;
+  /** Chi-square plus ln det of the residual covariance: what models of one window are compared by. */
+  readonly objective: number;
   readonly observations: number;
   /** Points [first, end) of the window. */
   readonly first: number;
@@ -51,13 +53,24 @@ export function fitStretch(
   if (!iterate(problem, 15, true)) return null;
   iterate(problem, 15, true);
   evaluate(problem, false);
-  const { chi2, observations } = equations;
+  const { chi2, logDet, observations } = equations;
   if (observations < size + 2 || !cholesky.factor(equations.A, size, 0)) return null;
   const covariance = cholesky.inverse();
   const chi2PerDof = chi2 / (observations - size);
   const inflation = Math.min(LARGEST_INFLATION, Math.max(1, chi2PerDof));
   for (let i = 0; i < covariance.length; i++) covariance[i]! *= inflation;
-  return { stretch, layout, pose, origin, covariance, chi2PerDof, observations, first: window[0], end: window[1] };
+  return {
+    stretch,
+    layout,
+    pose,
+    origin,
+    covariance,
+    chi2PerDof,
+    objective: chi2 + logDet,
+    observations,
+    first: window[0],
+    end: window[1],
+  };
 }
 
 interface Problem {

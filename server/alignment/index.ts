@@ -2,7 +2,7 @@ import type { Alignment } from '../../shared/model/alignment.ts';
 import type { Finding } from '../../shared/model/finding.ts';
 import type { Motion } from '../../shared/model/motion.ts';
 import type { Run } from '../../shared/model/run.ts';
-import { simplify } from './choose-model.ts';
+import { divisions, restarts, simplifications } from './choose-model.ts';
 import { buildCurves, curveCandidates, elementsOf } from './curves.ts';
 import { fitStretch, type StretchFit } from './fit-stretch.ts';
 import { parametersOf, pointNoise, refinedModel, type PointNoise } from './noise.ts';
@@ -73,7 +73,16 @@ function fitAll(
   return stretches.flatMap((stretch) => settleStretch(stretch, null, equations, points, motion, noise, use));
 }
 
-/** Fits a stretch and simplifies it until everything in it stands. */
+/** Rise of the objective that a simpler stretch may cost: three parameters fewer at about ln n each. */
+const ALLOWED_RISE = 13;
+/** Fall of the objective that a richer stretch must bring. */
+const REQUIRED_FALL = 16;
+/** Residual variance beyond which other starts and divisions are tried. */
+const POOR_FIT = 1.7;
+/** Simplifications tried before a fit is taken to stand. */
+const MOST_TRIES = 4;
+
+/** Fits a stretch, divides it where too much stays unexplained, and simplifies it until everything in it stands. */
 function settleStretch(
   start: Stretch,
   pose: Float64Array | null,
@@ -84,20 +93,71 @@ function settleStretch(
   use: Use,
 ): StretchFit[] {
   const window = [pointFrom(points, start.fromM), pointFrom(points, start.toM)] as const;
-  if (window[1] - window[0] < 4) return [];
+  if (window[1] - window[0] < 4 || start.levels.length === 0) return [];
   const origin = poseAt(motion, start.fromM);
-  let stretch: Stretch = start;
-  let from = pose;
-  for (let step = 0; step < MOST_STEPS; step++) {
-    if (stretch.levels.length === 0) return [];
-    const fit = fitStretch(equations, stretch, origin, window, noise, use, from);
-    if (fit === null) return [];
-    const simpler = simplify(fit);
-    if (simpler === null) return [fit];
-    stretch = simpler;
-    from = fit.pose;
+  const attempt = (stretch: Stretch, from: Float64Array | null) =>
+    stretch.levels.length === 0 ? null : fitStretch(equations, stretch, origin, window, noise, use, from);
+  const better = (a: StretchFit | null, b: StretchFit | null) =>
+    a === null || (b !== null && b.objective < a.objective) ? b : a;
+  let fit = attempt(start, pose);
+  if (fit === null || fit.chi2PerDof > POOR_FIT) {
+    for (const other of restarts(start)) fit = better(fit, attempt(other, pose));
   }
-  return [];
+  for (let step = 0; step < 4 && fit !== null && fit.chi2PerDof > POOR_FIT; step++) {
+    let richer: StretchFit | null = null;
+    for (const other of divisions(fit)) richer = better(richer, attempt(other, fit.pose));
+    if (richer === null || richer.objective > fit.objective - REQUIRED_FALL) break;
+    fit = richer;
+  }
+  const nothing = straightObjective(start, origin, window, equations, noise, use);
+  for (let step = 0; step < MOST_STEPS && fit !== null; step++) {
+    const simpler = nextSimpler(fit, attempt, nothing);
+    if (simpler === 'straight') return [];
+    if (simpler === null) break;
+    fit = simpler;
+  }
+  return fit === null ? [] : [fit];
+}
+
+/** The first simplification that costs no more than it may; `straight` when nothing is left. */
+function nextSimpler(
+  fit: StretchFit,
+  attempt: (stretch: Stretch, from: Float64Array | null) => StretchFit | null,
+  nothing: () => number,
+): StretchFit | 'straight' | null {
+  for (const { stretch } of simplifications(fit).slice(0, MOST_TRIES)) {
+    if (stretch.levels.length === 0) {
+      if (nothing() - fit.objective < ALLOWED_RISE) return 'straight';
+      continue;
+    }
+    const next = attempt(stretch, fit.pose);
+    if (next !== null && next.objective - fit.objective < ALLOWED_RISE) return next;
+  }
+  return null;
+}
+
+/** Objective of the window as one straight, worked out when first asked for. */
+function straightObjective(
+  start: Stretch,
+  origin: Origin,
+  window: readonly [number, number],
+  equations: NormalEquations,
+  noise: PointNoise,
+  use: Use,
+): () => number {
+  let value: number | null = null;
+  return () => {
+    const straight: Stretch = {
+      levels: [],
+      straight: [],
+      middles: [],
+      squares: [],
+      fromM: start.fromM,
+      toM: start.toM,
+    };
+    value ??= fitStretch(equations, straight, origin, window, noise, use, null)?.objective ?? Infinity;
+    return value;
+  };
 }
 
 /** Pose of the smoothed trajectory at a chainage. */
