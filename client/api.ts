@@ -140,11 +140,13 @@ export function upload(
 
 /** Follows what the server tells; reconnects by itself. */
 export function followEvents(on: {
+  opened: () => void;
   job: (job: Job) => void;
   recording: (recording: RecordingSummary) => void;
   removed: (key: string) => void;
 }): void {
   const source = new EventSource('/api/events');
+  source.addEventListener('open', on.opened);
   const listen = <T>(name: string, act: (body: T) => void) => {
     source.addEventListener(name, (event: MessageEvent<string>) => {
       act(JSON.parse(event.data) as T);

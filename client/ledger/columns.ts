@@ -1,24 +1,36 @@
 import { curveColumns, type CurveColumn } from '../../shared/schema/curve-columns.ts';
 import type { CurveRow } from '../../shared/schema/curve-row.ts';
+import { keep, readKept } from '../parts/kept.ts';
 
-const KEPT = 'bendbook.columns';
+type Key = keyof CurveRow;
 
-/** Width of a column, px. */
-export function columnWidth({ key, decimals }: CurveColumn): number {
-  if (key === 'utilisation') return 118;
-  if (key === 'verdict') return 124;
-  if (key === 'notes') return 420;
-  if (key === 'governing_criterion') return 190;
-  if (key === 'run') return 180;
-  if (key === 'curve') return 62;
-  return decimals === null ? 92 : 92;
+const WIDTH_PX: Partial<Record<Key, number>> = {
+  run: 220,
+  curve: 58,
+  hand: 56,
+  shape: 84,
+  verdict: 116,
+  governing_criterion: 212,
+  value: 96,
+  limit: 92,
+  utilisation: 136,
+  cant_source: 92,
+  notes: 460,
+};
+
+/** Width of a column, px: enough for its figures and for its title in two lines. */
+export function columnWidth({ key, label }: CurveColumn): number {
+  const longestWord = Math.max(...label.split(' ').map((word) => word.length));
+  return WIDTH_PX[key] ?? Math.max(label.length > 16 ? 96 : 80, 26 + 7.4 * longestWord);
 }
 
-const FIRST: Readonly<Record<'rail' | 'road', readonly (keyof CurveRow)[]>> = {
+const FIRST: Readonly<Record<'rail' | 'road', readonly Key[]>> = {
   rail: [
     'curve',
     'verdict',
     'governing_criterion',
+    'value',
+    'limit',
     'utilisation',
     'hand',
     'radius_m',
@@ -26,7 +38,6 @@ const FIRST: Readonly<Record<'rail' | 'road', readonly (keyof CurveRow)[]>> = {
     'end_m',
     'speed_kmh',
     'cant_mm',
-    'equilibrium_cant_mm',
     'cant_deficiency_mm',
     'lateral_track_ms2',
     'lateral_body_ms2',
@@ -39,6 +50,8 @@ const FIRST: Readonly<Record<'rail' | 'road', readonly (keyof CurveRow)[]>> = {
     'curve',
     'verdict',
     'governing_criterion',
+    'value',
+    'limit',
     'utilisation',
     'hand',
     'radius_m',
@@ -47,7 +60,6 @@ const FIRST: Readonly<Record<'rail' | 'road', readonly (keyof CurveRow)[]>> = {
     'speed_kmh',
     'superelevation_pct',
     'side_friction',
-    'lateral_track_ms2',
     'lateral_body_ms2',
     'jerk_ms3',
     'ball_bank_deg',
@@ -56,13 +68,24 @@ const FIRST: Readonly<Record<'rail' | 'road', readonly (keyof CurveRow)[]>> = {
   ],
 };
 
-/** Columns shown: the user's choice, kept for the mode, else those that most people need. */
-export function keptColumns(mode: 'rail' | 'road'): readonly CurveColumn[] {
-  const kept = localStorage.getItem(`${KEPT}.${mode}`)?.split(',') ?? FIRST[mode];
-  const found = kept.flatMap((key) => curveColumns.filter((column) => column.key === key));
-  return found.length > 0 ? found : curveColumns.filter(({ key }) => FIRST[mode].includes(key));
+/** Every column, those that most people need first and in their order. */
+export function columnOrder(mode: 'rail' | 'road'): readonly CurveColumn[] {
+  const find = (key: Key) => curveColumns.find((column) => column.key === key)!;
+  return [...FIRST[mode].map(find), ...curveColumns.filter(({ key }) => !FIRST[mode].includes(key))];
 }
 
-export function keepColumns(mode: 'rail' | 'road', columns: readonly CurveColumn[]): void {
-  localStorage.setItem(`${KEPT}.${mode}`, columns.map(({ key }) => key).join(','));
+/** Columns shown: the reader's choice, kept for the mode, else those that most people need. */
+export function keptColumns(mode: 'rail' | 'road'): readonly CurveColumn[] {
+  const kept = readKept<readonly string[]>(`columns.${mode}`, FIRST[mode]);
+  const shown = columnOrder(mode).filter(({ key }) => kept.includes(key));
+  return shown.length > 0 ? shown : columnOrder(mode).slice(0, FIRST[mode].length);
+}
+
+export function keepColumns(mode: 'rail' | 'road', columns: readonly CurveColumn[] | null): void {
+  keep(`columns.${mode}`, columns?.map(({ key }) => key) ?? null);
+}
+
+/** Chainages may be shown in another unit than lengths. */
+export function isChainage(key: Key): boolean {
+  return key === 'start_m' || key === 'end_m';
 }

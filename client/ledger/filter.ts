@@ -4,9 +4,12 @@ import { byWorst } from '../parts/text.ts';
 /** What the ledger shows: absent bounds are open, an empty set of verdicts shows all. */
 export interface Filter {
   readonly verdicts: readonly CurveRow['verdict'][];
+  /** Curves that this criterion governs, or where it is over or undecided; empty for all. */
   readonly criterion: string;
-  readonly radiusBelowM: number | null;
-  readonly speedAboveKmh: number | null;
+  readonly radiusFromM: number | null;
+  readonly radiusToM: number | null;
+  readonly speedFromKmh: number | null;
+  readonly speedToKmh: number | null;
   readonly fromM: number | null;
   readonly toM: number | null;
 }
@@ -14,8 +17,10 @@ export interface Filter {
 export const NO_FILTER: Filter = {
   verdicts: [],
   criterion: '',
-  radiusBelowM: null,
-  speedAboveKmh: null,
+  radiusFromM: null,
+  radiusToM: null,
+  speedFromKmh: null,
+  speedToKmh: null,
   fromM: null,
   toM: null,
 };
@@ -26,16 +31,32 @@ export interface Sort {
   readonly descending: boolean;
 }
 
+export const WORST_FIRST: Sort = { key: 'worst', descending: true };
+
 export function filterCurves(curves: readonly AssessedCurve[], filter: Filter): AssessedCurve[] {
   return curves.filter(
-    ({ row }) =>
+    ({ row, criteria }) =>
       (filter.verdicts.length === 0 || filter.verdicts.includes(row.verdict)) &&
-      (filter.criterion === '' || row.governing_criterion === filter.criterion) &&
-      (filter.radiusBelowM === null || (row.radius_m ?? Infinity) <= filter.radiusBelowM) &&
-      (filter.speedAboveKmh === null || (row.speed_kmh ?? 0) >= filter.speedAboveKmh) &&
+      (filter.criterion === '' ||
+        row.governing_criterion === filter.criterion ||
+        criteria.some(
+          (c) => c.criterion === filter.criterion && (c.verdict === 'over' || c.verdict === 'undecided'),
+        )) &&
+      isBetween(row.radius_m ?? Infinity, filter.radiusFromM, filter.radiusToM) &&
+      isBetween(row.speed_kmh ?? 0, filter.speedFromKmh, filter.speedToKmh) &&
       (filter.fromM === null || row.end_m >= filter.fromM) &&
       (filter.toM === null || row.start_m <= filter.toM),
   );
+}
+
+function isBetween(value: number, from: number | null, to: number | null): boolean {
+  return (from === null || value >= from) && (to === null || value <= to);
+}
+
+/** How many bounds besides verdicts and criterion are set. */
+export function countBounds(filter: Filter): number {
+  const { radiusFromM, radiusToM, speedFromKmh, speedToKmh, fromM, toM } = filter;
+  return [radiusFromM, radiusToM, speedFromKmh, speedToKmh, fromM, toM].filter((bound) => bound !== null).length;
 }
 
 /** Sorted copy; unknown values come last whichever way. */

@@ -1,33 +1,41 @@
 import type { Finding } from '../../shared/model/finding.ts';
-import { clock, figure } from './text.ts';
+import { clock, counted, figure } from './text.ts';
 
 const ORDER = { serious: 0, warning: 1, info: 2 };
+const WORDS = { serious: 'Serious', warning: 'Corrected or dropped', info: 'Worth knowing' };
+const PLACES_SHOWN = 3;
 
 /** Findings, the serious ones first, each with its first places. */
 export function Findings({ findings }: { readonly findings: readonly Finding[] }) {
   if (findings.length === 0) return <p class="quiet-text">Nothing was dropped or corrected.</p>;
   return (
-    <ul>
+    <ul class="findings">
       {[...findings]
         .sort((a, b) => ORDER[a.severity] - ORDER[b.severity])
         .map((f, i) => (
-          <li key={i}>
-            <strong>{f.severity === 'info' ? '' : `${f.severity}: `}</strong>
-            {f.message}
-            {f.dropped > 0 && <span class="quiet-text"> ({f.dropped} fixes dropped)</span>}
-            {f.places.length > 0 && (
-              <span class="quiet-text">
-                {' '}
-                {f.places
-                  .slice(0, 3)
-                  .map(placeText)
-                  .filter((t) => t !== '')
-                  .join('; ')}
-              </span>
-            )}
+          <li key={i} class={f.severity}>
+            <span class="finding-word">{WORDS[f.severity]}</span>
+            <span>
+              {f.message.replace(/\.?$/, '.')}
+              {f.dropped > 0 && <span class="quiet-text"> {counted(f.dropped, 'fix', 'fixes')} dropped.</span>}
+              <Places places={f.places} />
+            </span>
           </li>
         ))}
     </ul>
+  );
+}
+
+function Places({ places }: { readonly places: Finding['places'] }) {
+  const texts = places.map(placeText).filter((text) => text !== '');
+  if (texts.length === 0) return null;
+  const rest = texts.length - PLACES_SHOWN;
+  return (
+    <span class="quiet-text">
+      {' '}
+      At {texts.slice(0, PLACES_SHOWN).join('; ')}
+      {rest > 0 ? ` and ${String(rest)} more` : ''}.
+    </span>
   );
 }
 

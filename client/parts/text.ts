@@ -1,6 +1,7 @@
 import { CRITERIA } from '../../shared/limits/criteria.ts';
-import type { AssessedCurve, CriterionResult, CurveRow } from '../../shared/schema/curve-row.ts';
 import { roundRow } from '../../shared/schema/curve-columns.ts';
+import type { AssessedCurve, CriterionResult, CurveRow } from '../../shared/schema/curve-row.ts';
+import { inShown, type ShownUnits } from './units.ts';
 
 /** A number for people: enough figures, a thin gap for thousands, a dash where there is none. */
 export function figure(value: number | null | undefined, decimals = 1): string {
@@ -15,6 +16,32 @@ export function figure(value: number | null | undefined, decimals = 1): string {
 export function interval(low: number | null, high: number | null, decimals = 1): string {
   if (low === null && high === null) return '';
   return `${figure(low, decimals)} to ${high === null ? '∞' : figure(high, decimals)}`;
+}
+
+/** A figure that stands in `unit`, with the reader's unit behind it. */
+export function quantity(
+  value: number | null | undefined,
+  unit: string,
+  decimals: number,
+  units: ShownUnits,
+  isChainage = false,
+): string {
+  const shown = inShown(value ?? null, unit, decimals, units, isChainage);
+  const after = unitText(shown.unit);
+  if (after === '' || shown.value === null) return figure(shown.value, shown.decimals);
+  return `${figure(shown.value, shown.decimals)}${after === '°' ? '' : '\u00a0'}${after}`;
+}
+
+/** A 95 % interval in the reader's unit, without the unit. */
+export function shownInterval(
+  low: number | null,
+  high: number | null,
+  unit: string,
+  decimals: number,
+  units: ShownUnits,
+): string {
+  const shown = inShown(low, unit, decimals, units);
+  return interval(shown.value, inShown(high, unit, decimals, units).value, shown.decimals);
 }
 
 export function criterionName(criterion: CriterionResult['criterion'] | null): string {
@@ -32,20 +59,28 @@ export function byWorst(a: AssessedCurve, b: AssessedCurve): number {
   return RANK[a.row.verdict] - RANK[b.row.verdict] || (b.row.utilisation ?? -1) - (a.row.utilisation ?? -1);
 }
 
-/** The one sentence that somebody in a hurry reads. */
-export function curveSentence({ row, criteria }: AssessedCurve): string {
-  const r = roundRow(row);
+/** The governing criterion in words: "cant deficiency 172 mm against 130 mm"; null when nothing governs. */
+export function governingText({ row, criteria }: AssessedCurve, units: ShownUnits): string | null {
   const governing = criteria.find(({ criterion }) => criterion === row.governing_criterion);
-  const place = `Curve ${String(row.curve)}, ${row.hand}, R ${figure(r.radius_m, 0)} m`;
-  if (governing === undefined || governing.value === null) return `${place}: ${row.verdict}.`;
+  if (governing === undefined || governing.value === null) return null;
   const decimals = criterionDecimals(governing.criterion);
+  const value = quantity(governing.value, governing.unit, decimals, units);
   const against =
-    governing.limit === null ? '' : ` against ${figure(governing.limit, decimals)} ${unitText(governing.unit)}`;
-  const judged = `${criterionName(governing.criterion).toLowerCase()} ${figure(governing.value, decimals)} ${unitText(governing.unit)}${against}: ${row.verdict}.`;
-  const needsCure = row.verdict === 'over' || row.verdict === 'undecided';
-  if (!needsCure || r.complying_speed_kmh === null) return `${place}: ${judged}`;
+    governing.limit === null ? '' : ` against ${quantity(governing.limit, governing.unit, decimals, units)}`;
+  return `${criterionName(governing.criterion).toLowerCase()} ${value}${against}`;
+}
+
+/** The one sentence that somebody in a hurry reads. */
+export function curveSentence(curve: AssessedCurve, units: ShownUnits): string {
+  const r = roundRow(curve.row);
+  const place = `Curve ${String(r.curve)}, ${r.hand}, R ${quantity(r.radius_m, 'm', 0, units)}`;
+  const governing = governingText(curve, units);
+  if (governing === null) return `${place}: ${r.verdict}.`;
+  const judged = `${place}: ${governing}: ${r.verdict}.`;
+  const needsCure = r.verdict === 'over' || r.verdict === 'undecided';
+  if (!needsCure || r.complying_speed_kmh === null) return judged;
   const cost = r.time_cost_s === null ? '' : ` and costs ${figure(r.time_cost_s, 1)} s`;
-  return `${place}: ${judged} ${figure(r.complying_speed_kmh, 0)} km/h would comply${cost}.`;
+  return `${judged} ${quantity(r.complying_speed_kmh, 'km/h', 0, units)} would comply${cost}.`;
 }
 
 export function unitText(unit: string): string {
@@ -70,4 +105,9 @@ export function clock(utcS: number): string {
 export function bytes(count: number): string {
   if (count < 1000) return `${String(count)} B`;
   return count < 1e6 ? `${figure(count / 1e3, 0)} kB` : `${figure(count / 1e6, 1)} MB`;
+}
+
+/** "1 curve", "3 curves". */
+export function counted(count: number, one: string, many = `${one}s`): string {
+  return `${String(count)} ${count === 1 ? one : many}`;
 }

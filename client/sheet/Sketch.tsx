@@ -1,112 +1,130 @@
+import { useEffect, useMemo, useState } from 'preact/hooks';
 import type { Curve } from '../../shared/model/alignment.ts';
-import type { Passage } from '../../shared/model/passage.ts';
-import { figure } from '../parts/text.ts';
+import type { ProfileWindow } from '../../shared/schema/api.ts';
+import { api } from '../api.ts';
+import { quantity } from '../parts/text.ts';
+import { unitRatio } from '../parts/units.ts';
+import { app, report } from '../state/app-state.ts';
+import { useSlice } from '../state/observable.ts';
+import { fittedPath, laidOn, pointAt, turned, type PathPoint } from './curve-path.ts';
 
-const [WIDTH, HEIGHT] = [340, 190];
+const [WIDTH, LEAST_HEIGHT, MOST_HEIGHT] = [360, 90, 260];
+const PAD = 26;
+const POINTS = 160;
+/** Metres a degree of latitude; good enough to lay one path on another. */
+const METRES_PER_DEGREE = 111_195;
 
-/** Plan of the fitted geometry in true proportion with its tangent points, and the speed through it. */
-export function Sketch({ curve, passage }: { readonly curve: Curve; readonly passage: Passage }) {
-  const points = integrate(curve);
-  const xs = points.map(({ x }) => x);
-  const ys = points.map(({ y }) => y);
-  const [x0, x1, y0, y1] = [Math.min(...xs), Math.max(...xs), Math.min(...ys), Math.max(...ys)];
-  const scale = Math.min((WIDTH - 40) / Math.max(1, x1 - x0), (HEIGHT - 60) / Math.max(1, y1 - y0));
-  const px = (x: number) => WIDTH / 2 + (x - (x0 + x1) / 2) * scale;
-  const py = (y: number) => (HEIGHT - 20) / 2 - (y - (y0 + y1) / 2) * scale;
-  const path = points.map(({ x, y }, i) => `${i === 0 ? 'M' : 'L'}${px(x).toFixed(1)} ${py(y).toFixed(1)}`).join('');
-  const marks = [
-    [curve.startM, 'start'],
-    [curve.arcStartM, 'arc'],
-    [curve.arcEndM, 'arc'],
-    [curve.endM, 'end'],
-  ] as const;
-  const bar = niceLength(60 / scale);
+/** Plan of the fitted geometry in true proportion over the recorded path, with its tangent points, north and a scale. */
+export function Sketch({ runId, curve }: { readonly runId: string; readonly curve: Curve }) {
+  const units = useSlice(app, (s) => s.units);
+  const marginM = 0.2 * (curve.endM - curve.startM) + 15;
+  const recorded = useRecordedPath(runId, curve.startM - marginM, curve.endM + marginM);
+  const drawn = useMemo(() => place(curve, marginM, recorded), [curve, marginM, recorded]);
+  const { fitted, under, northRad } = drawn;
+  const all = [...fitted, ...under];
+  const [x0, x1] = [Math.min(...all.map(({ x }) => x)), Math.max(...all.map(({ x }) => x))];
+  const [y0, y1] = [Math.min(...all.map(({ y }) => y)), Math.max(...all.map(({ y }) => y))];
+  const scale = Math.min((WIDTH - 2 * PAD) / Math.max(1, x1 - x0), (MOST_HEIGHT - 2 * PAD) / Math.max(1, y1 - y0));
+  const height = Math.max(LEAST_HEIGHT, (y1 - y0) * scale + 2 * PAD + 16);
+  const px = (p: PathPoint) => WIDTH / 2 + (p.x - (x0 + x1) / 2) * scale;
+  const py = (p: PathPoint) => (height - 16) / 2 - (p.y - (y0 + y1) / 2) * scale;
+  const line = (points: readonly PathPoint[]) =>
+    points.map((p, i) => `${i === 0 ? 'M' : 'L'}${px(p).toFixed(1)} ${py(p).toFixed(1)}`).join('');
+  const lengthUnit = units.length;
+  const bar = niceLength((70 / scale) * unitRatio('m', lengthUnit));
+  const barPx = (bar / unitRatio('m', lengthUnit)) * scale;
   return (
-    <figure class="sketch">
+    <section>
+      <h3>Plan</h3>
       <svg
-        viewBox={`0 0 ${String(WIDTH)} ${String(HEIGHT)}`}
+        class="chart"
+        viewBox={`0 0 ${String(WIDTH)} ${height.toFixed(0)}`}
         role="img"
-        aria-label={`Plan of curve ${String(curve.number)}: ${curve.hand}, radius ${figure(curve.radiusM.value, 0)} m`}
+        aria-label={`Plan of curve ${String(curve.number)} in true proportion: ${curve.hand}, radius ${quantity(curve.radiusM.value, 'm', 0, units)}`}
       >
-        <path d={path} fill="none" stroke="var(--fitted)" stroke-width="2.4" />
-        {marks.map(([s, name], k) => {
-          const p = points.reduce((best, q) => (Math.abs(q.s - s) < Math.abs(best.s - s) ? q : best));
+        <path class="recorded-path" d={line(under)} />
+        <path class="fitted-path" d={line(fitted)} />
+        <path class="fitted-arc" d={line(fitted.filter(({ s }) => s >= curve.arcStartM && s <= curve.arcEndM))} />
+        {tangentPoints(curve).map(([s, name]) => {
+          const p = pointAt(fitted, s);
           return (
-            <g key={k}>
-              <circle cx={px(p.x)} cy={py(p.y)} r="4" fill="var(--panel)" stroke="var(--ink)" stroke-width="1.5">
-                <title>{`${name} at ${figure(s, 0)} m`}</title>
-              </circle>
-            </g>
+            <circle key={name} class="tangent-point" cx={px(p)} cy={py(p)} r="3.6">
+              <title>{`${name}: ${quantity(s, 'm', 0, units, true)}`}</title>
+            </circle>
           );
         })}
-        <path d={`M12 ${String(HEIGHT - 12)}v5h${(bar * scale).toFixed(1)}v-5`} fill="none" stroke="var(--ink-3)" />
-        <text x={18 + bar * scale} y={HEIGHT - 6} font-size="11" fill="var(--ink-3)">
-          {figure(bar, 0)} m
+        <path class="scale-bar" d={`M10 ${(height - 12).toFixed(1)}v5h${barPx.toFixed(1)}v-5`} />
+        <text x={16 + barPx} y={height - 6}>
+          {bar} {lengthUnit}
         </text>
-        <Speeds passage={passage} />
+        {northRad !== null && (
+          <g transform={`translate(${String(WIDTH - 16)} 18) rotate(${((-northRad * 180) / Math.PI + 90).toFixed(1)})`}>
+            <path class="north-arrow" d="M0 -11 4 6 0 3 -4 6Z" />
+          </g>
+        )}
       </svg>
-    </figure>
+      <p class="quiet-text caption">
+        Heavy: the circular arc. Rings: tangent points. Grey: the path as recorded. Arrow: north.
+      </p>
+    </section>
   );
 }
 
-/** Speed through the curve as a small line at the lower right. */
-function Speeds({ passage }: { readonly passage: Passage }) {
-  const { chainageM: s, speedMps: v } = passage;
-  const [low, high] = [Math.min(...v), Math.max(...v)];
-  const span = Math.max(high - low, 0.5);
-  const [left, top, width, height] = [WIDTH - 122, HEIGHT - 34, 112, 20];
-  const x = (m: number) => left + ((m - s[0]!) / Math.max(1e-6, s[s.length - 1]! - s[0]!)) * width;
-  const y = (mps: number) => top + height - ((mps - low) / span) * height;
-  return (
-    <g>
-      <path
-        d={s.map((m, i) => `${i === 0 ? 'M' : 'L'}${x(m).toFixed(1)} ${y(v[i]!).toFixed(1)}`).join('')}
-        fill="none"
-        stroke="var(--ink-2)"
-        stroke-width="1.3"
-      />
-      <text x={left} y={top - 4} font-size="10.5" fill="var(--ink-3)">
-        {figure(low * 3.6, 0)} to {figure(high * 3.6, 0)} km/h
-      </text>
-    </g>
-  );
+function tangentPoints(curve: Curve): readonly (readonly [s: number, name: string])[] {
+  return [
+    [curve.startM, 'Start of the entry transition'],
+    [curve.arcStartM, 'Start of the arc'],
+    [curve.arcEndM, 'End of the arc'],
+    [curve.endM, 'End of the exit transition'],
+  ];
 }
 
-/** The fitted centre line from 30 % before the curve to 30 % after it, by small steps of heading. */
-function integrate(curve: Curve): { s: number; x: number; y: number }[] {
-  const { startM, endM, arcStartM, arcEndM } = curve;
-  const kappa = curve.curvaturePerM.value;
-  const margin = 0.3 * (endM - startM) + 10;
-  const steps = 240;
-  const ds = (endM - startM + 2 * margin) / steps;
-  const at = (s: number) => {
-    if (s < startM) return curve.entry.fromCurvaturePerM;
-    if (s < arcStartM) return mix(curve.entry.fromCurvaturePerM, kappa, (s - startM) / (arcStartM - startM));
-    if (s <= arcEndM) return kappa;
-    if (s < endM) return mix(kappa, curve.exit.fromCurvaturePerM, (s - arcEndM) / (endM - arcEndM));
-    return curve.exit.fromCurvaturePerM;
+function useRecordedPath(runId: string, fromM: number, toM: number): readonly PathPoint[] {
+  const [path, setPath] = useState<readonly PathPoint[]>([]);
+  useEffect(() => {
+    const abort = new AbortController();
+    api
+      .profile(runId, Math.max(0, fromM), toM, POINTS, abort.signal)
+      .then((window) => setPath(localPath(window)))
+      .catch((error: unknown) => {
+        if (!abort.signal.aborted) report(error);
+      });
+    return () => abort.abort();
+  }, [runId, fromM, toM]);
+  return path;
+}
+
+function localPath({ columns }: ProfileWindow): PathPoint[] {
+  const lat = columns.lat ?? [];
+  const lon = columns.lon ?? [];
+  const first = lat.findIndex((value) => value !== null);
+  if (first < 0) return [];
+  const [lat0, lon0] = [lat[first]!, lon[first]!];
+  const perLon = METRES_PER_DEGREE * Math.cos((lat0 * Math.PI) / 180);
+  return (columns.s_m ?? []).flatMap((s, i) => {
+    const [a, o] = [lat[i] ?? null, lon[i] ?? null];
+    if (s === null || a === null || o === null) return [];
+    // Across the date line the shorter way round.
+    const east = ((o - lon0 + 540) % 360) - 180;
+    return [{ s, x: east * perLon, y: (a - lat0) * METRES_PER_DEGREE }];
+  });
+}
+
+/** Fitted and recorded path with the chord level, the apex upwards, and where north lies then. */
+function place(
+  curve: Curve,
+  marginM: number,
+  recorded: readonly PathPoint[],
+): { fitted: readonly PathPoint[]; under: readonly PathPoint[]; northRad: number | null } {
+  const own = fittedPath(curve, marginM);
+  const fitted = recorded.length < 3 ? own : laidOn(own, recorded).path;
+  const [a, b] = [fitted[0]!, fitted[fitted.length - 1]!];
+  const level = -Math.atan2(b.y - a.y, b.x - a.x);
+  return {
+    fitted: turned(fitted, level),
+    under: turned(recorded, level),
+    northRad: recorded.length < 3 ? null : Math.PI / 2 + level,
   };
-  let [x, y, heading] = [0, 0, 0];
-  const points = [{ s: startM - margin, x, y }];
-  for (let k = 0; k < steps; k++) {
-    const s = startM - margin + (k + 0.5) * ds;
-    heading += at(s) * ds;
-    x += Math.cos(heading - (at(s) * ds) / 2) * ds;
-    y += Math.sin(heading - (at(s) * ds) / 2) * ds;
-    points.push({ s: s + ds / 2, x, y });
-  }
-  // Turned so that the chord lies level.
-  const end = points[points.length - 1]!;
-  const turn = -Math.atan2(end.y, end.x);
-  return points.map((p) => ({
-    s: p.s,
-    x: p.x * Math.cos(turn) - p.y * Math.sin(turn),
-    y: p.x * Math.sin(turn) + p.y * Math.cos(turn),
-  }));
-}
-
-function mix(a: number, b: number, t: number): number {
-  return a + (b - a) * t;
 }
 
 function niceLength(raw: number): number {

@@ -1,29 +1,39 @@
-import { app, openRun, type View } from './app-state.ts';
+import { app, type View } from './app-state.ts';
+import { openRun } from './open-run.ts';
 
-const VIEWS: readonly View[] = ['desk', 'recordings', 'limits', 'vehicles', 'registers'];
+const VIEWS: readonly View[] = ['desk', 'recordings', 'limits', 'vehicles', 'registers', 'units'];
 
 /**
  * The place in the address: #/desk?run=...&curve=7&from=1200&to=2400. A link opens the same run, curve and window;
  * choosing a run, a curve or a screen makes a step for the back button, panning does not.
  */
 export function followAddress(): void {
-  read();
-  addEventListener('popstate', read);
-  addEventListener('hashchange', read);
-  let before = key();
+  let reading = false;
+  const follow = () => {
+    reading = true;
+    read();
+    reading = false;
+    before = place();
+  };
+  let before = place();
+  follow();
+  addEventListener('popstate', follow);
+  addEventListener('hashchange', follow);
   app.listen(() => {
-    const now = key();
+    const now = place();
     const address = write();
-    if (address === location.hash) return;
-    if (now === before) history.replaceState(null, '', address);
-    else history.pushState(null, '', address);
+    if (reading || address === location.hash) return;
+    // The run that the page opens by itself is no step of the reader's.
+    const isStep = now.key !== before.key && before.runId !== null;
+    if (isStep) history.pushState(null, '', address);
+    else history.replaceState(null, '', address);
     before = now;
   });
 }
 
-function key(): string {
+function place(): { readonly key: string; readonly runId: string | null } {
   const { view, runId, curve } = app.get();
-  return `${view} ${runId ?? ''} ${String(curve)}`;
+  return { key: `${view} ${runId ?? ''} ${String(curve)}`, runId };
 }
 
 function write(): string {

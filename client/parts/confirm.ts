@@ -1,4 +1,0 @@
-/** Asks before something that cannot be undone. */
-export function confirmAction(question: string): boolean {
-  return window.confirm(question);
-}
