@@ -1,3 +1,4 @@
+import './no-eval.ts';
 import { render } from 'preact';
 import { App } from './App.tsx';
 import './theme.css';

@@ -37,11 +37,9 @@ export function Band({ open }: { readonly open: OpenRun }) {
   }, [open.ref.mode]);
 
   useEffect(() => {
-    const watch = new ResizeObserver(() => {
-      const box = canvas.current!.getBoundingClientRect();
-      setSize([box.width, box.height]);
-    });
-    watch.observe(canvas.current!);
+    const target = canvas.current!;
+    const watch = new ResizeObserver(() => setSize([target.clientWidth, target.clientHeight]));
+    watch.observe(target);
     return () => watch.disconnect();
   }, []);
 
