@@ -1,5 +1,6 @@
 import { useEffect, useRef, useState } from 'preact/hooks';
 import { Desk } from './desk/Desk.tsx';
+import { preparePrinting } from './desk/PrintTable.tsx';
 import { LimitSets } from './setup/LimitSets.tsx';
 import { Recordings } from './setup/Recordings.tsx';
 import { Registers } from './setup/Registers.tsx';
@@ -29,6 +30,7 @@ export function App() {
   useEffect(() => {
     document.title = title;
   }, [title]);
+  useEffect(() => preparePrinting(), []);
   useEffect(() => closeMenusOutside(), []);
   useEffect(() => followKeys(showHelp), []);
   return (

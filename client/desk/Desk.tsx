@@ -58,9 +58,9 @@ export function Desk() {
             </button>
           ))}
         </div>
-        <section class={area('plan')} aria-label="Plan">
+        <div class={area('plan')}>
           <Plan open={open} />
-        </section>
+        </div>
         <div class={area('band')}>
           <Band open={open} />
         </div>

@@ -50,7 +50,7 @@ function tally(open: OpenRun) {
     <>
       <button
         type="button"
-        class={over > 0 ? 'count over' : 'count'}
+        class={`count lead-count${over > 0 ? ' over' : ''}`}
         disabled={over === 0}
         onClick={() => show('over')}
       >

@@ -17,7 +17,7 @@ export function LogMenu({ open }: { readonly open: OpenRun }) {
           {serious > 0 ? `, ${String(serious)} serious` : ''}
         </span>
       </summary>
-      <div class="wide-menu text">
+      <div class="wide-menu text" tabIndex={0} role="region" aria-label="Log and findings">
         <h2>The log</h2>
         <dl class="pairs">
           <dt>Run</dt>

@@ -19,7 +19,7 @@ export function SetupMenu({ open }: { readonly open: OpenRun }) {
     <details class="menu">
       <summary>
         <span class="ellipsis">
-          Judged by: {open.setup.limits.name}
+          Limits: {open.setup.limits.name}
           {ref.tier === 'exceptional' ? ', exceptional' : ''}
         </span>
       </summary>

@@ -14,6 +14,7 @@ import { UtilisationBar } from './UtilisationBar.tsx';
 const ROW_PX = 32;
 const HEAD_PX = 52;
 const PAGE_ROWS = 10;
+const ROW_PADDING_PX = 8;
 
 /** Rows drawn only where they can be seen; one stop of the tab key, arrows from there. */
 export function LedgerTable(props: {
@@ -29,11 +30,16 @@ export function LedgerTable(props: {
   useEffect(() => {
     if (at >= 0) virtual.scrollToIndex(at, { align: 'auto' });
   }, [at]);
-  const template = columns.map((column) => `${String(columnWidth(column))}px`).join(' ') + ' minmax(0, 1fr)';
+  const widths = columns.map(columnWidth);
+  const template = `${widths.map((px) => `${String(px)}px`).join(' ')} minmax(0, 1fr)`;
+  const widthPx = widths.reduce((sum, px) => sum + px, 0) + 2 * ROW_PADDING_PX;
   return (
     <div
       class="ledger-scroll"
-      ref={scroll}
+      ref={(el) => {
+        scroll.current = el;
+        setStyle(el, '--ledger-width', `${String(widthPx)}px`);
+      }}
       role="grid"
       tabIndex={0}
       aria-label="Curves"
@@ -140,7 +146,7 @@ function Head(props: {
               >
                 <span>
                   {column.label}
-                  {unit !== '' && <span class="head-unit"> {unit}</span>}
+                  {unit !== '' && <span class="head-unit">{unit}</span>}
                 </span>
                 <span class="sort-sign" aria-hidden="true">
                   {on ? (sort.descending ? '↓' : '↑') : ''}

@@ -1,7 +1,7 @@
 import type { CurveColumn } from '../../shared/schema/curve-columns.ts';
 import type { CurveRow } from '../../shared/schema/curve-row.ts';
 import { criterionOf } from '../../shared/limits/criteria.ts';
-import { criterionName, figure, unitText } from '../parts/text.ts';
+import { criterionName, figure, limitQuantity, quantity } from '../parts/text.ts';
 import { inShown, shownUnit, type ShownUnits } from '../parts/units.ts';
 import { isChainage } from './columns.ts';
 
@@ -14,7 +14,7 @@ export function headUnit({ key, unit }: CurveColumn, units: ShownUnits): string 
 export function cellText(row: CurveRow, { key, unit, decimals }: CurveColumn, units: ShownUnits): string {
   const value = row[key];
   if (key === 'governing_criterion') return criterionName(row.governing_criterion);
-  if (key === 'value' || key === 'limit') return criterionText(row, row[key], units);
+  if (key === 'value' || key === 'limit') return criterionText(row, key, units);
   if (typeof value === 'string') return value;
   if (unit === '') return figure(value, decimals ?? 0);
   const shown = inShown(value, unit, decimals ?? 0, units, isChainage(key));
@@ -22,11 +22,11 @@ export function cellText(row: CurveRow, { key, unit, decimals }: CurveColumn, un
 }
 
 /** Value and limit stand in the unit of the criterion that governs. */
-function criterionText(row: CurveRow, value: number | null, units: ShownUnits): string {
+function criterionText(row: CurveRow, key: 'value' | 'limit', units: ShownUnits): string {
+  const value = row[key];
   if (row.governing_criterion === null || value === null) return '–';
   const { unit, decimals } = criterionOf(row.governing_criterion);
-  const shown = inShown(value, unit, decimals, units);
-  return `${figure(shown.value, shown.decimals)} ${unitText(shown.unit)}`.trimEnd();
+  return (key === 'limit' ? limitQuantity : quantity)(value, unit, decimals, units);
 }
 
 /**

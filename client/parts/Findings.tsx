@@ -2,7 +2,7 @@ import type { Finding } from '../../shared/model/finding.ts';
 import { clock, counted, figure } from './text.ts';
 
 const ORDER = { serious: 0, warning: 1, info: 2 };
-const WORDS = { serious: 'Serious', warning: 'Corrected or dropped', info: 'Worth knowing' };
+const WORDS = { serious: 'Serious', warning: 'Check', info: 'Note' };
 const PLACES_SHOWN = 3;
 
 /** Findings, the serious ones first, each with its first places. */

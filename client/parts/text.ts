@@ -32,6 +32,13 @@ export function quantity(
   return `${figure(shown.value, shown.decimals)}${after === '°' ? '' : '\u00a0'}${after}`;
 }
 
+/** A limit as people write it: without needless zeros. */
+export function limitQuantity(value: number, unit: string, decimals: number, units: ShownUnits): string {
+  return quantity(value, unit, decimals, units).replace(/\.(\d*?)0+(?=\D|$)/, (_, kept: string) =>
+    kept === '' ? '' : `.${kept}`,
+  );
+}
+
 /** A 95 % interval in the reader's unit, without the unit. */
 export function shownInterval(
   low: number | null,
@@ -66,7 +73,7 @@ export function governingText({ row, criteria }: AssessedCurve, units: ShownUnit
   const decimals = criterionDecimals(governing.criterion);
   const value = quantity(governing.value, governing.unit, decimals, units);
   const against =
-    governing.limit === null ? '' : ` against ${quantity(governing.limit, governing.unit, decimals, units)}`;
+    governing.limit === null ? '' : ` against ${limitQuantity(governing.limit, governing.unit, decimals, units)}`;
   return `${criterionName(governing.criterion).toLowerCase()} ${value}${against}`;
 }
 

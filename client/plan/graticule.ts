@@ -2,17 +2,17 @@ import L from 'leaflet';
 
 /** Meridians and parallels with their degrees: where one is when there is no basemap. */
 export class Graticule extends L.Layer {
-  #canvas = L.DomUtil.create('canvas', 'leaflet-zoom-hide');
+  readonly canvas = L.DomUtil.create('canvas', 'leaflet-zoom-hide');
 
   override onAdd(map: L.Map): this {
-    map.getPanes().tilePane.appendChild(this.#canvas);
+    map.getPanes().tilePane.appendChild(this.canvas);
     map.on('moveend zoomend resize viewreset', this.#draw, this);
     this.#draw();
     return this;
   }
 
   override onRemove(map: L.Map): this {
-    this.#canvas.remove();
+    this.canvas.remove();
     map.off('moveend zoomend resize viewreset', this.#draw, this);
     return this;
   }
@@ -21,7 +21,7 @@ export class Graticule extends L.Layer {
     const map = (this as unknown as { _map: L.Map })._map;
     const size = map.getSize();
     const ratio = devicePixelRatio || 1;
-    const canvas = this.#canvas;
+    const canvas = this.canvas;
     canvas.width = size.x * ratio;
     canvas.height = size.y * ratio;
     canvas.style.width = `${String(size.x)}px`;

@@ -30,20 +30,20 @@ export interface RunDrawing {
  * two pixels are merged and the worst class wins, so that no hotspot vanishes at any zoom.
  */
 export class RunLayer extends L.Layer {
-  #canvas = L.DomUtil.create('canvas', 'leaflet-zoom-hide');
+  readonly canvas = L.DomUtil.create('canvas', 'leaflet-zoom-hide');
   #drawing: RunDrawing | null = null;
   #line: Polyline | null = null;
   #chainage: Float64Array = new Float64Array(0);
 
   override onAdd(map: L.Map): this {
-    map.getPanes().overlayPane.appendChild(this.#canvas);
+    map.getPanes().overlayPane.appendChild(this.canvas);
     map.on('moveend zoomend resize viewreset', this.#draw, this);
     this.#draw();
     return this;
   }
 
   override onRemove(map: L.Map): this {
-    this.#canvas.remove();
+    this.canvas.remove();
     map.off('moveend zoomend resize viewreset', this.#draw, this);
     return this;
   }
@@ -84,7 +84,9 @@ export class RunLayer extends L.Layer {
     const i = lowerBound(this.#chainage, chainageM);
     const lat = window.columns.lat?.[i];
     const lon = window.columns.lon?.[i];
-    return lat == null || lon == null ? null : L.latLng(lat, unwrapped(lon, window.columns.lon?.[0] ?? 0));
+    return lat === null || lat === undefined || lon === null || lon === undefined
+      ? null
+      : L.latLng(lat, unwrapped(lon, window.columns.lon?.[0] ?? 0));
   }
 
   #map(): L.Map | null {
@@ -116,7 +118,7 @@ export class RunLayer extends L.Layer {
     if (map === null) return;
     const size = map.getSize();
     const ratio = devicePixelRatio || 1;
-    const canvas = this.#canvas;
+    const canvas = this.canvas;
     canvas.width = size.x * ratio;
     canvas.height = size.y * ratio;
     canvas.style.width = `${String(size.x)}px`;

@@ -1,4 +1,3 @@
-import { useState } from 'preact/hooks';
 import { checkLimitSet } from '../../shared/limits/check.ts';
 import { CRITERIA, criterionOf } from '../../shared/limits/criteria.ts';
 import type { CriterionId, LimitSet } from '../../shared/schema/limit-set.ts';
@@ -6,6 +5,7 @@ import { api } from '../api.ts';
 import { criterionName, unitText } from '../parts/text.ts';
 import { notify, report } from '../state/app-state.ts';
 import { refreshCatalogue } from '../state/open-run.ts';
+import { useDraft } from './use-draft.ts';
 import { bandText, limitFigure } from './limit-text.ts';
 
 type Limits = LimitSet['limits'];
@@ -14,8 +14,7 @@ const OPERATOR: Limits[number]['source'] = { document: 'operator', clause: '', y
 
 /** The values of a set with their sources; of the user's own sets they can be changed, added and taken out. */
 export function LimitTable({ set, editable }: { readonly set: LimitSet; readonly editable: boolean }) {
-  const [draft, setDraft] = useState(set);
-  const isChanged = draft !== set;
+  const { draft, isChanged, setDraft, undo } = useDraft(set);
   const problems = editable ? checkLimitSet(draft) : [];
   const change = (limits: Limits) => setDraft({ ...draft, limits });
   return (
@@ -39,7 +38,7 @@ export function LimitTable({ set, editable }: { readonly set: LimitSet; readonly
           >
             Save changes
           </button>
-          <button type="button" disabled={!isChanged} onClick={() => setDraft(set)}>
+          <button type="button" disabled={!isChanged} onClick={undo}>
             Undo
           </button>
         </div>
@@ -75,7 +74,9 @@ export function LimitTable({ set, editable }: { readonly set: LimitSet; readonly
             {draft.limits.flatMap((limit, k) =>
               limit.bands.map((band, b) => (
                 <tr key={`${limit.criterion}-${String(b)}`} class={b > 0 ? 'same' : ''}>
-                  <th scope="row">{b === 0 ? criterionName(limit.criterion) : ''}</th>
+                  <th scope="row">
+                    <span class={b === 0 ? '' : 'sr'}>{criterionName(limit.criterion)}</span>
+                  </th>
                   <td>{bandText(band)}</td>
                   {(['normal', 'exceptional'] as const).map((tier) => (
                     <td class="num" key={tier}>

@@ -152,7 +152,7 @@ function RecordingCard({ recording, job }: { readonly recording: RecordingSummar
       {recording.runs.length > 0 && <RunTable recording={recording} />}
       {state === 'ready' && (
         <details>
-          <summary>{counted(findings.length, 'finding')}</summary>
+          <summary>{findings.length === 0 ? 'No findings' : counted(findings.length, 'finding')}</summary>
           <Findings findings={findings} />
         </details>
       )}

@@ -8,6 +8,7 @@ import { counted, figure } from '../parts/text.ts';
 import { app, notify, report } from '../state/app-state.ts';
 import { useSlice } from '../state/observable.ts';
 import { changeSetup, refreshCatalogue } from '../state/open-run.ts';
+import { useDraft } from './use-draft.ts';
 
 const TEMPLATE = 'from_m,to_m,cant_mm,note\n1200,1580,90,made-up example\n2310,2495,45,made-up example\n';
 
@@ -79,7 +80,7 @@ export function Registers() {
 
 function Register({ register }: { readonly register: CantRegister }) {
   const open = useSlice(app, (s) => s.open);
-  const [draft, setDraft] = useState(register);
+  const { draft, isChanged, setDraft, undo } = useDraft(register);
   const isUsed = open?.ref.registerId === register.id;
   const isRail = register.entries.some(({ cantMm }) => cantMm !== undefined);
   const against = draft.stretch < 0;
@@ -168,10 +169,10 @@ function Register({ register }: { readonly register: CantRegister }) {
             }}
           />
         </label>
-        <button type="submit" class="primary" disabled={draft === register}>
+        <button type="submit" class="primary" disabled={!isChanged}>
           Save
         </button>
-        <button type="button" disabled={draft === register} onClick={() => setDraft(register)}>
+        <button type="button" disabled={!isChanged} onClick={undo}>
           Undo
         </button>
       </form>

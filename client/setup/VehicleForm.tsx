@@ -1,8 +1,8 @@
-import { useState } from 'preact/hooks';
 import type { Vehicle } from '../../shared/schema/vehicle.ts';
 import { api } from '../api.ts';
 import { notify, report } from '../state/app-state.ts';
 import { refreshCatalogue } from '../state/open-run.ts';
+import { useDraft } from './use-draft.ts';
 
 type NumberField = Exclude<
   { [K in keyof Vehicle]: Vehicle[K] extends number | null ? K : never }[keyof Vehicle],
@@ -78,8 +78,7 @@ const FIELDS: readonly Field[] = [
 
 /** The figures of one vehicle; a field left empty is unknown. */
 export function VehicleForm({ vehicle, editable }: { readonly vehicle: Vehicle; readonly editable: boolean }) {
-  const [draft, setDraft] = useState(vehicle);
-  const isChanged = draft !== vehicle;
+  const { draft, isChanged, setDraft, undo } = useDraft(vehicle);
   const save = async () => {
     try {
       await api.putVehicle(draft);
@@ -142,7 +141,7 @@ export function VehicleForm({ vehicle, editable }: { readonly vehicle: Vehicle; 
       </label>
       {editable && (
         <div class="row end">
-          <button type="button" disabled={!isChanged} onClick={() => setDraft(vehicle)}>
+          <button type="button" disabled={!isChanged} onClick={undo}>
             Undo
           </button>
           <button type="submit" class="primary" disabled={!isChanged}>

@@ -85,7 +85,7 @@ export function Vehicles() {
           <p class="quiet-text">
             Source: {vehicle.source.document}
             {vehicle.source.status === vehicle.source.document ? '' : ` (${vehicle.source.status})`}.{' '}
-            {vehicle.source.note}
+            {vehicle.source.note?.replace(/\.?$/, '.')}
           </p>
         </section>
       </div>

@@ -1,7 +1,14 @@
 import type { AssessedCurve, CriterionResult } from '../../shared/schema/curve-row.ts';
 import { copyText } from '../parts/copy.ts';
-import { criterionDecimals, criterionName, curveSentence, quantity, shownInterval, unitText } from '../parts/text.ts';
-import { SI_UNITS } from '../parts/units.ts';
+import {
+  criterionDecimals,
+  criterionName,
+  curveSentence,
+  limitQuantity,
+  quantity,
+  shownInterval,
+} from '../parts/text.ts';
+import { shownUnit, SI_UNITS } from '../parts/units.ts';
 import { Verdict } from '../parts/Verdict.tsx';
 import { app } from '../state/app-state.ts';
 import { useSlice } from '../state/observable.ts';
@@ -16,8 +23,10 @@ export function Criteria({
   readonly tried: AssessedCurve | null;
 }) {
   const shown = tried ?? recorded;
+  const judged = shown.criteria.filter(({ verdict }) => verdict !== 'not assessed');
+  const rest = shown.criteria.filter(({ verdict }) => verdict === 'not assessed');
   return (
-    <section>
+    <section class="whole">
       <div class="row">
         <h3 class="grow">{tried === null ? 'Criteria' : 'Criteria as tried'}</h3>
         <button
@@ -28,13 +37,21 @@ export function Criteria({
           Copy working
         </button>
       </div>
-      {shown.criteria.map((criterion) => (
+      {judged.map((criterion) => (
         <Criterion
           key={criterion.criterion}
           result={criterion}
           isGoverning={criterion.criterion === shown.row.governing_criterion}
         />
       ))}
+      {rest.length > 0 && (
+        <details class="section">
+          <summary>Not judged ({rest.length}): no limit in the set, or something missing</summary>
+          {rest.map((criterion) => (
+            <Criterion key={criterion.criterion} result={criterion} isGoverning={false} />
+          ))}
+        </details>
+      )}
     </section>
   );
 }
@@ -42,7 +59,7 @@ export function Criteria({
 function Criterion({ result, isGoverning }: { readonly result: CriterionResult; readonly isGoverning: boolean }) {
   const units = useSlice(app, (s) => s.units);
   const decimals = criterionDecimals(result.criterion);
-  const unit = unitText(result.unit);
+  const isConverted = shownUnit(result.unit, units) !== result.unit;
   const interval =
     result.low === null ? '' : ` (${shownInterval(result.low, result.high, result.unit, decimals, units)})`;
   return (
@@ -52,7 +69,9 @@ function Criterion({ result, isGoverning }: { readonly result: CriterionResult; 
         <Verdict verdict={result.verdict} />
         <span class="criterion-figures">
           {result.value === null ? 'no value' : `${quantity(result.value, result.unit, decimals, units)}${interval}`}
-          {result.limit === null ? ', no limit set' : `, limit ${quantity(result.limit, result.unit, decimals, units)}`}
+          {result.limit === null
+            ? ', no limit set'
+            : `, limit ${limitQuantity(result.limit, result.unit, decimals, units)}`}
         </span>
         <UtilisationBar value={result.utilisation} verdict={result.verdict} />
       </summary>
@@ -60,7 +79,7 @@ function Criterion({ result, isGoverning }: { readonly result: CriterionResult; 
       {result.working.length > 0 && <pre class="working">{result.working.join('\n')}</pre>}
       <p class="quiet-text">
         Source of the limit: {result.source === '' ? 'none' : result.source}
-        {unit !== '' && units !== SI_UNITS && result.working.length > 0 ? '. The working stays in SI units.' : ''}
+        {isConverted && result.working.length > 0 ? '. The working stays in SI units.' : ''}
       </p>
     </details>
   );

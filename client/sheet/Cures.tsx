@@ -21,33 +21,25 @@ export function Cures(props: { readonly curve: AssessedCurve; readonly onTry: (c
   return (
     <section>
       <h3>What would cure it</h3>
-      <table class="plain figures">
-        <tbody>
-          {cures.map((cure) => (
-            <tr key={cure.kind}>
-              <th scope="row">{NAMES[cure.kind]}</th>
-              <td class="num strong">{quantity(cure.value, cure.unit, 0, units)}</td>
-              <td class="wide">
-                {cure.feasible
-                  ? cure.timeCostS === null
-                    ? 'would do'
-                    : `costs ${figure(cure.timeCostS, 1)} s`
-                  : `not enough alone: ${cure.against}`}
-              </td>
-              <td class="no-print">
-                <button
-                  type="button"
-                  class="small"
-                  aria-label={`Try ${NAMES[cure.kind].toLowerCase()} ${quantity(cure.value, cure.unit, 0, units)}`}
-                  onClick={() => onTry(change(cure.kind, cure.value))}
-                >
-                  Try
-                </button>
-              </td>
-            </tr>
-          ))}
-        </tbody>
-      </table>
+      <ul class="cures">
+        {cures.map((cure) => (
+          <li key={cure.kind} class={cure.feasible ? 'feasible' : ''}>
+            <p>
+              {NAMES[cure.kind]} <strong>{quantity(cure.value, cure.unit, 0, units)}</strong>
+              {cure.feasible && cure.timeCostS !== null && <>, costs {figure(cure.timeCostS, 1)} s</>}
+              {!cure.feasible && <small>Not enough alone: {cure.against}.</small>}
+            </p>
+            <button
+              type="button"
+              class="small no-print"
+              aria-label={`Try ${NAMES[cure.kind].toLowerCase()} ${quantity(cure.value, cure.unit, 0, units)}`}
+              onClick={() => onTry(change(cure.kind, cure.value))}
+            >
+              Try
+            </button>
+          </li>
+        ))}
+      </ul>
     </section>
   );
 }

@@ -6,7 +6,7 @@ export function Notes({ runId, number }: { readonly runId: string; readonly numb
   const key = `note.${runId}.${String(number)}`;
   const [text, setText] = useState(() => readKept(key, ''));
   return (
-    <section>
+    <section class="whole">
       <h3>
         <label for="curve-notes">Notes</label>
       </h3>

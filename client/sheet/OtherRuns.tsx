@@ -54,7 +54,7 @@ export function OtherRuns({ open, curve }: { readonly open: OpenRun; readonly cu
   );
   return (
     <details
-      class="section"
+      class="section whole"
       onToggle={(e) => {
         if (e.currentTarget.open) load();
       }}
@@ -67,7 +67,11 @@ export function OtherRuns({ open, curve }: { readonly open: OpenRun; readonly cu
       ) : found.length === 0 ? (
         <p class="quiet-text">None of the {counted(others.length, 'other run')} has a curve at this place.</p>
       ) : (
-        <table class="plain figures">
+        <table class="plain figures other-runs">
+          <caption class="quiet-text">
+            {info === null ? '' : `Value: ${criterionName(info.id).toLowerCase()}. `}Each run is judged under its own
+            setup.
+          </caption>
           <thead>
             <tr>
               <th scope="col">Run</th>
@@ -75,7 +79,7 @@ export function OtherRuns({ open, curve }: { readonly open: OpenRun; readonly cu
                 Speed
               </th>
               <th scope="col" class="num">
-                {info === null ? 'Value' : criterionName(info.id)}
+                Value
               </th>
               <th scope="col">Verdict</th>
             </tr>

@@ -55,12 +55,14 @@ export function Sheet({ open, number }: { readonly open: OpenRun; readonly numbe
         tried={tried}
         onTrial={setTrial}
       />
-      <PassageChart passage={passage} row={row} triedKmh={trial.speedKmh ?? null} />
-      <Sketch runId={open.detail.summary.id} curve={passage.curve} />
+      <div class="drawings">
+        <PassageChart passage={passage} row={row} triedKmh={trial.speedKmh ?? null} />
+        <Sketch runId={open.detail.summary.id} curve={passage.curve} />
+      </div>
       <Facts curve={passage.curve} row={row} mode={open.ref.mode} />
       <Criteria recorded={recorded} tried={tried?.curve ?? null} />
       <OtherRuns open={open} curve={recorded} />
-      <details class="section">
+      <details class="section whole">
         <summary>
           <h3>Geometry in the office’s terms</h3>
         </summary>
@@ -77,7 +79,7 @@ export function Sheet({ open, number }: { readonly open: OpenRun; readonly numbe
         </section>
       )}
       <Notes runId={open.detail.summary.id} number={number} />
-      <section class="cautions" aria-label="Cautions">
+      <section class="cautions whole" aria-label="Cautions">
         <h3>Before anybody acts on this</h3>
         <ul>
           {open.cautions.map((caution) => (

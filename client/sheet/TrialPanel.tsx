@@ -29,11 +29,17 @@ interface Props {
   readonly onTrial: (trial: CurveTrial) => void;
 }
 
+const END_HINTS: Readonly<Record<Curve['entry']['kind'], string>> = {
+  transition: 'as fitted',
+  abrupt: 'none found',
+  undetermined: 'not resolved',
+};
+
 /** What if: speed, cant, transitions, vehicle and limits of this curve; the verdict follows as they move. */
 export function TrialPanel(props: Props) {
   const { open, trial, tried, recorded, onTrial } = props;
   return (
-    <section class="trial" aria-label="Trial">
+    <section class={`trial${isAsRecorded(trial) ? ' no-print' : ''}`} aria-label="Trial">
       <div class="row">
         <h3 class="grow">What if</h3>
         <button
@@ -83,7 +89,7 @@ function Passage({ open, recorded, curve, trial, onTrial }: Props) {
       />
       <Slider
         label="Entry transition"
-        hint={trial.entryTransitionM === undefined ? curve.entry.kind : 'tried'}
+        hint={trial.entryTransitionM === undefined ? END_HINTS[curve.entry.kind] : 'tried'}
         unit="m"
         value={trial.entryTransitionM ?? curve.entry.lengthM.value}
         min={0}
@@ -93,7 +99,7 @@ function Passage({ open, recorded, curve, trial, onTrial }: Props) {
       />
       <Slider
         label="Exit transition"
-        hint={trial.exitTransitionM === undefined ? curve.exit.kind : 'tried'}
+        hint={trial.exitTransitionM === undefined ? END_HINTS[curve.exit.kind] : 'tried'}
         unit="m"
         value={trial.exitTransitionM ?? curve.exit.lengthM.value}
         min={0}

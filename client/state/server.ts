@@ -35,7 +35,7 @@ async function load(): Promise<void> {
     report(error);
   }
   const first = app.get().recordings.flatMap(({ runs }) => runs)[0];
-  if (app.get().runId === null && first !== undefined && app.get().view === 'desk') await openRun(first.id);
+  if (app.get().runId === null && first !== undefined) await openRun(first.id);
 }
 
 function takeRecording(recording: RecordingSummary): void {
