@@ -147,14 +147,12 @@ export function followEvents(on: {
 }): void {
   const source = new EventSource('/api/events');
   source.addEventListener('open', on.opened);
-  const listen = <T>(name: string, act: (body: T) => void) => {
+  const listen = (name: string, act: (body: unknown) => void) => {
     source.addEventListener(name, (event: MessageEvent<string>) => {
-      act(JSON.parse(event.data) as T);
+      act(JSON.parse(event.data));
     });
   };
-  listen<Job>('job', on.job);
-  listen<RecordingSummary>('recording', on.recording);
-  listen<{ id: string }>('removed', (body) => {
-    on.removed(body.id);
-  });
+  listen('job', (body) => on.job(body as Job));
+  listen('recording', (body) => on.recording(body as RecordingSummary));
+  listen('removed', (body) => on.removed((body as { id: string }).id));
 }

@@ -13,7 +13,7 @@ export function figure(value: number | null | undefined, decimals = 1): string {
   return `${sign}${grouped}${part === undefined ? '' : `.${part}`}`;
 }
 
-export function interval(low: number | null, high: number | null, decimals = 1): string {
+function interval(low: number | null, high: number | null, decimals = 1): string {
   if (low === null && high === null) return '';
   return `${figure(low, decimals)} to ${high === null ? '∞' : figure(high, decimals)}`;
 }

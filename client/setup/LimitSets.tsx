@@ -116,8 +116,10 @@ export function LimitSets() {
 
 type Listed = LimitSet & { readonly builtIn: boolean };
 
-function withoutMark({ builtIn: _builtIn, ...set }: Listed): LimitSet {
-  return set;
+function withoutMark(set: Listed): LimitSet {
+  const plain: LimitSet & { builtIn?: boolean } = { ...set };
+  delete plain.builtIn;
+  return plain;
 }
 
 async function copySet(set: Listed): Promise<string> {

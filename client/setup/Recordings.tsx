@@ -85,7 +85,7 @@ function RecordingCard({ recording, job }: { readonly recording: RecordingSummar
   const [naming, setNaming] = useState(false);
   const { fault, state, findings } = recording;
   const isIdle = state === 'refused' || state === 'ready';
-  const wasCancelled = job?.state === 'cancelled' && isIdle === false;
+  const wasCancelled = job?.state === 'cancelled' && !isIdle;
   const canName = recording.format === 'csv' || (fault !== null && recording.format === '');
   const title = recording.title === '' ? recording.name : recording.title;
   const remove = async () => {

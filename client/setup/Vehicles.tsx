@@ -93,8 +93,10 @@ export function Vehicles() {
   );
 }
 
-function withoutMark({ builtIn: _builtIn, ...vehicle }: Listed): Vehicle {
-  return vehicle;
+function withoutMark(vehicle: Listed): Vehicle {
+  const plain: Vehicle & { builtIn?: boolean } = { ...vehicle };
+  delete plain.builtIn;
+  return plain;
 }
 
 async function copyVehicle(vehicle: Listed): Promise<string> {

@@ -114,10 +114,8 @@ function Passage({ open, recorded, curve, trial, onTrial }: Props) {
 /** Another vehicle, set or tier for this trial alone. */
 function JudgedBy({ open, catalogue, trial, onTrial }: Props) {
   const { mode } = open.ref;
-  const without = (key: 'vehicleId' | 'limitSetId' | 'tier'): CurveTrial => {
-    const { [key]: _gone, ...rest } = trial;
-    return rest;
-  };
+  const without = (key: 'vehicleId' | 'limitSetId' | 'tier') =>
+    Object.fromEntries(Object.entries(trial).filter(([name]) => name !== key)) as unknown as CurveTrial;
   const pick = (key: 'vehicleId' | 'limitSetId', own: string, id: string) =>
     onTrial(id === own ? without(key) : { ...trial, [key]: id });
   return (
@@ -234,7 +232,7 @@ function NamedTrials({ open, catalogue, trial, recorded, onTrial }: Props) {
         class="row no-print"
         onSubmit={(e) => {
           e.preventDefault();
-          const name = new FormData(e.currentTarget).get('name')?.toString().trim() ?? '';
+          const name = (e.currentTarget.elements.namedItem('name') as HTMLInputElement).value.trim();
           if (name === '') return;
           change([...saved.filter((s) => s.name !== name), { name, trial }]);
           notify(`Kept as “${name}”`);
