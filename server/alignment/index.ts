@@ -79,6 +79,8 @@ const ALLOWED_RISE = 13;
 const REQUIRED_FALL = 16;
 /** Residual variance beyond which other starts and divisions are tried. */
 const POOR_FIT = 1.7;
+/** Points times squared parameters spent on one stretch, all attempts together; a hopeless one must not hold up the rest. */
+const MOST_WORK = 6e5;
 /** Simplifications tried before a fit is taken to stand. */
 const MOST_TRIES = 4;
 
@@ -95,8 +97,12 @@ function settleStretch(
   const window = [pointFrom(points, start.fromM), pointFrom(points, start.toM)] as const;
   if (window[1] - window[0] < 4 || start.levels.length === 0) return [];
   const origin = poseAt(motion, start.fromM);
-  const attempt = (stretch: Stretch, from: Float64Array | null) =>
-    stretch.levels.length === 0 ? null : fitStretch(equations, stretch, origin, window, noise, use, from);
+  let work = 0;
+  const attempt = (stretch: Stretch, from: Float64Array | null) => {
+    if (stretch.levels.length === 0 || work > MOST_WORK) return null;
+    work += (window[1] - window[0]) * (3 + 3 * stretch.levels.length) ** 2;
+    return fitStretch(equations, stretch, origin, window, noise, use, from);
+  };
   const better = (a: StretchFit | null, b: StretchFit | null) =>
     a === null || (b !== null && b.objective < a.objective) ? b : a;
   let fit = attempt(start, pose);
