@@ -23,6 +23,13 @@ export interface StretchFit {
 /** Prior sd of the along-track offset: free where speed carries the chainage, tied where positions do, m. */
 const FREE_OFFSET_M = 20;
 const TIED_OFFSET_M = 0.3;
+/** A step that promises to lower the objective by less than this is not taken: before and after outliers are weighted down. */
+const ROUGHLY = 0.03;
+const WELL = 0.02;
+const ROBUST_ROUNDS = 2;
+const FIRST_DAMPING = 1e-3;
+/** Robust factors that change by less leave the solution where it is. */
+const SAME_FACTOR = 1.15;
 /** Residual variance above this is a failed fit, not noise. */
 const LARGEST_INFLATION = 3;
 
@@ -48,11 +55,26 @@ export function fitStretch(
   equations.open(window[0], window[1]);
   const pose = startPose === null ? new Float64Array(POSE) : startPose.slice();
   const cholesky = new Cholesky();
-  const problem = { equations, stretch, layout, pose, origin, noise, use, cholesky };
-  if (!iterate(problem, 40, false)) return null;
-  if (!iterate(problem, 15, true)) return null;
-  iterate(problem, 15, true);
-  evaluate(problem, false);
+  const problem: Problem = {
+    equations,
+    stretch,
+    layout,
+    pose,
+    origin,
+    noise,
+    use,
+    cholesky,
+    keptA: new Float64Array(size * size),
+    linearised: false,
+  };
+  evaluate(problem);
+  if (!iterate(problem, 40, ROUGHLY)) return null;
+  for (let round = 0; round < ROBUST_ROUNDS; round++) {
+    whiten(problem, true);
+    if (equations.factorChange < SAME_FACTOR) break;
+    whiten(problem, false);
+    if (!iterate(problem, 15, WELL)) return null;
+  }
   const { chi2, logDet, observations } = equations;
   if (observations < size + 2 || !cholesky.factor(equations.A, size, 0)) return null;
   const covariance = cholesky.inverse();
@@ -82,12 +104,21 @@ interface Problem {
   readonly noise: PointNoise;
   readonly use: Use;
   readonly cholesky: Cholesky;
+  /** Information matrix of the last accepted parameters. */
+  readonly keptA: Float64Array;
+  /** Whether the residuals that `whiten` reads are those of the present parameters. */
+  linearised: boolean;
 }
 
 /** Normal equations at the present parameters, the prior of the along-track offset included. */
-function evaluate(problem: Problem, updateFactors: boolean): void {
-  const { equations, stretch, layout, pose, origin, noise, use } = problem;
+function evaluate(problem: Problem): void {
+  const { equations, stretch, layout, pose, origin } = problem;
   equations.linearise(stretch, layout, pose, origin);
+  problem.linearised = true;
+  whiten(problem, false);
+}
+
+function whiten({ equations, stretch, layout, pose, noise, use }: Problem, updateFactors: boolean): void {
   equations.whiten(noise, use, updateFactors);
   const sd = use.along ? FREE_OFFSET_M : TIED_OFFSET_M;
   equations.A[0]! += 1 / (sd * sd);
@@ -104,16 +135,21 @@ function objective(problem: Problem): number {
   return problem.equations.chi2 + problem.equations.logDet + (problem.pose[0]! / sd) ** 2;
 }
 
-function iterate(problem: Problem, most: number, robust: boolean): boolean {
-  const { equations, stretch, layout, pose, cholesky } = problem;
+/**
+ * Levenberg-Marquardt steps from evaluated normal equations; leaves those of the solution.
+ *
+ * @param enough stops when a step promises, or has brought, less than this
+ */
+function iterate(problem: Problem, most: number, enough: number): boolean {
+  const { equations, stretch, layout, pose, cholesky, keptA } = problem;
   const { size } = layout;
-  const step = new Float64Array(size);
-  evaluate(problem, robust);
   if (equations.observations < size + 2) return false;
-  if (robust) evaluate(problem, false);
+  const step = new Float64Array(size);
+  const keptG = new Float64Array(size);
+  const keptPose = new Float64Array(POSE);
   let value = objective(problem);
   if (!Number.isFinite(value)) return false;
-  let damping = 1e-3;
+  let damping = FIRST_DAMPING;
   for (let k = 0; k < most; k++) {
     if (!cholesky.factor(equations.A, size, damping)) {
       damping = Math.max(1e-3, damping * 10);
@@ -121,23 +157,34 @@ function iterate(problem: Problem, most: number, robust: boolean): boolean {
       continue;
     }
     cholesky.solve(equations.g, step);
-    const before = { stretch: copyStretch(stretch), pose: pose.slice() };
-    move(stretch, layout, pose, step);
-    evaluate(problem, false);
-    const next = objective(problem);
-    if (next <= value + 1e-9) {
-      const gained = value - next;
-      value = next;
-      damping = Math.max(1e-7, damping * 0.2);
-      if (gained < 0.02) break;
-    } else {
-      restore(stretch, before.stretch);
-      pose.set(before.pose);
-      damping = Math.max(1e-4, damping * 8);
-      if (damping > 1e5) break;
-      evaluate(problem, false);
+    let promised = 0;
+    for (let p = 0; p < size; p++) {
+      promised += step[p]! * (equations.g[p]! + damping * step[p]! * equations.A[p * size + p]!);
     }
+    if (promised < enough) break;
+    const kept = { stretch: copyStretch(stretch), chi2: equations.chi2 };
+    for (let i = 0; i < size * size; i++) keptA[i] = equations.A[i]!;
+    for (let p = 0; p < size; p++) keptG[p] = equations.g[p]!;
+    keptPose.set(pose);
+    move(stretch, layout, pose, step);
+    evaluate(problem);
+    const gained = value - objective(problem);
+    if (gained >= -1e-9) {
+      value -= gained;
+      damping = gained > 0.25 * promised ? Math.max(1e-7, damping * 0.1) : damping * 2;
+      if (gained < enough) break;
+      continue;
+    }
+    restore(stretch, kept.stretch);
+    pose.set(keptPose);
+    equations.A.set(keptA);
+    equations.g.set(keptG);
+    equations.chi2 = kept.chi2;
+    problem.linearised = false;
+    damping = Math.max(1e-4, damping * 8);
+    if (damping > 1e5) break;
   }
+  if (!problem.linearised) evaluate(problem);
   return true;
 }
 

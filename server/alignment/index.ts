@@ -3,7 +3,8 @@ import type { Finding } from '../../shared/model/finding.ts';
 import type { Motion } from '../../shared/model/motion.ts';
 import type { Run } from '../../shared/model/run.ts';
 import { divisions, restarts, simplifications } from './choose-model.ts';
-import { buildCurves, curveCandidates, elementsOf } from './curves.ts';
+import { whyNotCredible } from './credible.ts';
+import { buildCurves, curveCandidates, elementsOf, type CurveContext } from './curves.ts';
 import { fitStretch, type StretchFit } from './fit-stretch.ts';
 import { parametersOf, pointNoise, refinedModel, type PointNoise } from './noise.ts';
 import { NormalEquations, type Origin, type Use } from './normal-equations.ts';
@@ -45,7 +46,7 @@ export function fitAlignment(run: Run, motion: Motion): { alignment: Alignment; 
   noise = pointNoise(parameters, points.binS);
   fits = fits.flatMap((fit) => settleStretch(fit.stretch, fit.pose, equations, points, motion, noise, use));
   const candidates = curveCandidates(fits);
-  const curves = buildCurves(candidates, {
+  const context: CurveContext = {
     motion,
     scaleSdMps: quality.noise.sigmaSpeedMps,
     hasCourse: use.course,
@@ -53,13 +54,19 @@ export function fitAlignment(run: Run, motion: Motion): { alignment: Alignment; 
     goodShare(fit, fromM, toM) {
       return observedShare(points, fit, fromM, toM);
     },
-  });
+  };
+  const reasons = buildCurves(candidates, context).map((curve) => whyNotCredible(curve, points));
+  // Built again without those that cannot be: numbers and joins follow what is left.
+  const curves = buildCurves(
+    candidates.filter((_, i) => reasons[i] === null),
+    context,
+  );
   const alignment: Alignment = { lengthM, elements: elementsOf(curves, lengthM), curves };
   const refined: Motion = {
     ...motion,
     quality: { ...quality, noise: refinedModel(quality.noise, parameters, use.course) },
   };
-  return { alignment, motion: refined, findings: findingsOf(alignment) };
+  return { alignment, motion: refined, findings: [...findingsOf(alignment), ...discarded(reasons)] };
 }
 
 function fitAll(
@@ -215,6 +222,24 @@ function findingsOf(alignment: Alignment): Finding[] {
       count: hidden.length,
       dropped: 0,
       places: hidden.slice(0, 20).map(({ startM }) => ({ chainageM: startM })),
+    },
+  ];
+}
+
+/** Fits that were taken for errors, told with their reasons. */
+function discarded(reasons: readonly (string | null)[]): Finding[] {
+  const told = reasons.filter((reason) => reason !== null);
+  if (told.length === 0) return [];
+  const counts = [...new Set(told)].map((reason) => `${String(told.filter((r) => r === reason).length)} ${reason}`);
+  return [
+    {
+      code: 'alignment/not-credible',
+      stage: 'alignment',
+      severity: 'warning',
+      message: `${String(told.length)} bends in the recording cannot be curves of the line and were left out (${counts.join('; ')}): errors of the receiver at stops, in gaps or under cover`,
+      count: told.length,
+      dropped: 0,
+      places: [],
     },
   ];
 }

@@ -1,7 +1,8 @@
 import type { StretchFit } from './fit-stretch.ts';
 import type { PointNoise } from './noise.ts';
 import type { NormalPoints } from './points.ts';
-import { changeLength, headingAt, type Layout, type Stretch } from './stretch-model.ts';
+import { LineWalk } from './line-walk.ts';
+import type { Layout, Stretch } from './stretch-model.ts';
 
 /** Beyond this many standard deviations a whitened residual is weighted down in the robust passes. */
 const GATE = 3.5;
@@ -59,13 +60,13 @@ export class NormalEquations {
   #acrossFactor = new Float64Array(0);
   #alongFactor = new Float64Array(0);
   #courseFactor = new Float64Array(0);
-  #breaks = new Float64Array(0);
-  #gradient = new Float64Array(0);
-  #xColumn = new Float64Array(0);
-  #yColumn = new Float64Array(0);
+  #walk = new LineWalk();
   #bx = new Float64Array(0);
   #by = new Float64Array(0);
   #z = new Float64Array(0);
+  #product = 1;
+  /** Largest ratio between a robust factor and the one before, of the last update. */
+  factorChange = 1;
 
   constructor(points: NormalPoints) {
     this.#points = points;
@@ -96,26 +97,12 @@ export class NormalEquations {
     }
     if (this.#z.length < columns) {
       const most = columns + 16;
-      this.#gradient = new Float64Array(most);
-      this.#xColumn = new Float64Array(most);
-      this.#yColumn = new Float64Array(most);
       this.#bx = new Float64Array(most);
       this.#by = new Float64Array(most);
       this.#z = new Float64Array(most);
       this.A = new Float64Array(most * most);
       this.g = new Float64Array(most);
     }
-  }
-
-  /** Ends of all changes in ascending order; returns how many. */
-  #layBreaks({ middles, squares }: Stretch): number {
-    if (this.#breaks.length < 2 * middles.length) this.#breaks = new Float64Array(4 * middles.length);
-    for (let j = 0; j < middles.length; j++) {
-      const L = changeLength(squares[j]!);
-      this.#breaks[2 * j] = middles[j]! - L / 2;
-      this.#breaks[2 * j + 1] = middles[j]! + L / 2;
-    }
-    return 2 * middles.length;
   }
 
   /** Residuals and derivatives at the points of the window. `pose` is x0, y0, theta0 relative to the origin. */
@@ -125,59 +112,24 @@ export class NormalEquations {
     const { size } = layout;
     this.#reserve(end - first, size);
     const columns = size + 1;
-    const gradient = this.#gradient;
-    const dx = this.#xColumn;
-    const dy = this.#yColumn;
-    dx.fill(0);
-    dy.fill(0);
-    const theta0 = origin.headingRad + pose[2]!;
-    let x = origin.xM + pose[0]! * Math.cos(origin.headingRad) - pose[1]! * Math.sin(origin.headingRad);
-    let y = origin.yM + pose[0]! * Math.sin(origin.headingRad) + pose[1]! * Math.cos(origin.headingRad);
+    const course = this.#course;
+    const across = this.#across;
+    const along = this.#along;
+    const walk = this.#walk;
     const [c0, s0] = [Math.cos(origin.headingRad), Math.sin(origin.headingRad)];
-    let at = stretch.fromM;
-    let sharpest = 1e-6;
-    for (const k of stretch.levels) sharpest = Math.max(sharpest, Math.abs(k));
-    // Two-point Gauss quadrature between the ends of changes, where everything is smooth: error of a step h below 2e-6 h.
-    const longest = 0.35 / sharpest;
-    const half = 0.5 / Math.sqrt(3);
-    const breaks = this.#layBreaks(stretch);
-    const lastBreak = breaks > 0 ? this.#breaks[breaks - 1]! : Infinity;
-    let next = 0;
+    walk.begin(
+      stretch,
+      layout,
+      origin.xM + pose[0]! * c0 - pose[1]! * s0,
+      origin.yM + pose[0]! * s0 + pose[1]! * c0,
+      origin.headingRad + pose[2]!,
+    );
+    const { dx, dy } = walk;
     for (let i = first; i < end; i++) {
       const row = (i - first) * columns;
-      const target = points.chainageM[i]!;
-      while (at !== target) {
-        while (next < breaks && this.#breaks[next]! <= at) next++;
-        const pieceEnd = target > at && next < breaks ? Math.min(target, this.#breaks[next]!) : target;
-        const straight = next === 0 || at >= lastBreak;
-        const steps = straight ? 1 : Math.max(1, Math.ceil((pieceEnd - at) / longest));
-        const step = (pieceEnd - at) / steps;
-        for (let k = 0; k < steps; k++) {
-          // On a straight nothing varies: one place stands for the piece.
-          for (let side = straight ? 2 : 0; side < (straight ? 3 : 2); side++) {
-            const s = at + (k + 0.5 + (side === 2 ? 0 : side === 0 ? -half : half)) * step;
-            const theta = theta0 + headingAt(stretch, layout, s, gradient);
-            const weight = side === 2 ? step : 0.5 * step;
-            const c = Math.cos(theta) * weight;
-            const n = Math.sin(theta) * weight;
-            x += c;
-            y += n;
-            dx[2]! -= n;
-            dy[2]! += c;
-            for (let p = 3; p < size; p++) {
-              const d = gradient[p]!;
-              if (d === 0) continue;
-              dx[p]! -= n * d;
-              dy[p]! += c * d;
-            }
-          }
-        }
-        at = pieceEnd;
-      }
+      walk.advance(points.chainageM[i]!);
       const ref = points.referenceRad[i]!;
       const [nx, ny] = [-Math.sin(ref), Math.cos(ref)];
-      const across = this.#across;
-      const along = this.#along;
       across[row] = nx * c0 + ny * s0;
       across[row + 1] = -nx * s0 + ny * c0;
       along[row] = ny * c0 - nx * s0;
@@ -186,18 +138,17 @@ export class NormalEquations {
         across[row + p] = nx * dx[p]! + ny * dy[p]!;
         along[row + p] = ny * dx[p]! - nx * dy[p]!;
       }
-      const ex = points.xM[i]! - x;
-      const ey = points.yM[i]! - y;
+      const ex = points.xM[i]! - walk.x;
+      const ey = points.yM[i]! - walk.y;
       across[row + size] = nx * ex + ny * ey;
       along[row + size] = ny * ex - nx * ey;
-      const theta = theta0 + headingAt(stretch, layout, target, gradient);
       const v = points.speedMps[i]!;
-      const course = this.#course;
+      const { gradient } = walk;
       course[row] = 0;
       course[row + 1] = 0;
       course[row + 2] = v;
       for (let p = 3; p < size; p++) course[row + p] = v * gradient[p]!;
-      course[row + size] = v * (points.headingRad[i]! - theta);
+      course[row + size] = v * (points.headingRad[i]! - walk.theta);
     }
   }
 
@@ -238,6 +189,7 @@ export class NormalEquations {
     this.chi2 = 0;
     this.logDet = 0;
     this.observations = 0;
+    this.factorChange = 1;
     bx.fill(0);
     by.fill(0);
     let [pxx, pxy, pyy] = [noise.wander, 0, noise.wander];
@@ -271,7 +223,7 @@ export class NormalEquations {
         const white = noise.positionWhite * share + (axis === 0 ? 0 : CHAINAGE_VARIANCE);
         const S0 = hx * kx + hy * ky + white;
         const e = values[row + size]! - (hx * bx[size]! + hy * by[size]!);
-        if (updateFactors) factors[i - first] = Math.max(1, (e * e) / (GATE * GATE * S0));
+        if (updateFactors) this.#update(factors, i - first, (e * e) / (GATE * GATE * S0));
         const S = S0 * factors[i - first]!;
         for (let p = 0; p < columns; p++) {
           const whitened = values[row + p]! - (hx * bx[p]! + hy * by[p]!);
@@ -286,6 +238,7 @@ export class NormalEquations {
       }
     }
     if (use.course) this.#whitenCourse(noise, updateFactors);
+    this.#closeProduct();
   }
 
   #whitenCourse(noise: PointNoise, updateFactors: boolean): void {
@@ -311,7 +264,7 @@ export class NormalEquations {
       const white = Math.max(noise.courseWhite * share + noise.courseWhiteOfBin, 0.05 * noise.courseWhite * share);
       const S0 = variance + white;
       const e = this.#course[row + size]! - b[size]!;
-      if (updateFactors) this.#courseFactor[i - first] = Math.max(1, (e * e) / (GATE * GATE * S0));
+      if (updateFactors) this.#update(this.#courseFactor, i - first, (e * e) / (GATE * GATE * S0));
       const S = S0 * this.#courseFactor[i - first]!;
       const gain = variance / S;
       for (let p = 0; p < columns; p++) {
@@ -322,6 +275,13 @@ export class NormalEquations {
       variance -= gain * variance;
       this.#add(z, S);
     }
+  }
+
+  #update(factors: Float64Array, k: number, excess: number): void {
+    const before = factors[k]!;
+    const now = Math.max(1, excess);
+    this.factorChange = Math.max(this.factorChange, now / before, before / now);
+    factors[k] = now;
   }
 
   #add(z: Float64Array, S: number): void {
@@ -336,24 +296,14 @@ export class NormalEquations {
       for (let q = 0; q <= p; q++) A[row + q]! += w * z[q]!;
     }
     this.chi2 += z[size]! * e;
-    this.logDet += Math.log(S);
+    // Logarithms of products of a few dozen variances: one call instead of dozens.
+    this.#product *= S;
+    if (this.#product < 1e-200 || this.#product > 1e200) this.#closeProduct();
     this.observations++;
   }
 
-  /** Share of the points of a range of chainage whose position or course counts at nearly full weight. */
-  goodShare(fromM: number, toM: number): number {
-    const points = this.#points;
-    let good = 0;
-    let all = 0;
-    for (let i = this.first; i < this.end; i++) {
-      const s = points.chainageM[i]!;
-      if (s < fromM || s > toM) continue;
-      all++;
-      const k = i - this.first;
-      const position = points.positionShare[i]! > 0 && this.#acrossFactor[k]! < 3;
-      const course = points.courseShare[i]! > 0 && this.#courseFactor[k]! < 3;
-      if (position || course) good++;
-    }
-    return all === 0 ? NaN : good / all;
+  #closeProduct(): void {
+    this.logDet += Math.log(this.#product);
+    this.#product = 1;
   }
 }

@@ -61,44 +61,6 @@ export function levelAfter(stretch: Stretch, j: number): number {
   return j === stretch.levels.length ? 0 : stretch.levels[j]!;
 }
 
-/** Heading relative to theta_0 at chainage s; with `gradient` also its derivatives by all parameters (pose entries untouched). */
-export function headingAt(stretch: Stretch, layout: Layout, s: number, gradient: Float64Array | null): number {
-  const { middles, squares } = stretch;
-  let theta = 0;
-  if (gradient !== null) gradient.fill(0, POSE);
-  for (let j = 0; j < middles.length; j++) {
-    const L = changeLength(squares[j]!);
-    const w = s - middles[j]! + L / 2;
-    if (w <= 0) break;
-    const step = levelAfter(stretch, j) - levelBefore(stretch, j);
-    const inside = w < L;
-    const R1 = inside ? (w * w) / (2 * L) : w - L / 2;
-    theta += step * R1;
-    if (gradient === null) continue;
-    const after = j < layout.level.length ? layout.level[j]! : -1;
-    const before = j > 0 ? layout.level[j - 1]! : -1;
-    if (after >= 0) gradient[after]! += R1;
-    if (before >= 0) gradient[before]! -= R1;
-    const m = layout.middle[j]!;
-    gradient[m] = -step * (inside ? w / L : 1);
-    // d R1 / d u = (w / (2 L) - w^2 / (2 L^2)) / (2 L) inside the change, zero beyond it.
-    gradient[m + 1] = inside ? (step * (w / (2 * L) - (w * w) / (2 * L * L))) / (2 * L) : 0;
-  }
-  return theta;
-}
-
-/** Curvature at chainage s. */
-export function curvatureAt(stretch: Stretch, s: number): number {
-  let kappa = 0;
-  for (let j = 0; j < stretch.middles.length; j++) {
-    const L = changeLength(stretch.squares[j]!);
-    const z = (s - stretch.middles[j]!) / L + 0.5;
-    if (z <= 0) break;
-    kappa += (levelAfter(stretch, j) - levelBefore(stretch, j)) * Math.min(1, z);
-  }
-  return kappa;
-}
-
 /** Keeps the changes in order and no longer than the levels between them allow. */
 export function settle(stretch: Stretch): void {
   const { middles, squares, fromM, toM } = stretch;
