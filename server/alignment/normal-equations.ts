@@ -1,3 +1,4 @@
+import { wrapAngle } from '../estimate/motion-filter.ts';
 import type { StretchFit } from './fit-stretch.ts';
 import type { PointNoise } from './noise.ts';
 import type { NormalPoints } from './points.ts';
@@ -148,7 +149,7 @@ export class NormalEquations {
       course[row + 1] = 0;
       course[row + 2] = v;
       for (let p = 3; p < size; p++) course[row + p] = v * gradient[p]!;
-      course[row + size] = v * (points.headingRad[i]! - walk.theta);
+      course[row + size] = v * wrapAngle(points.headingRad[i]! - walk.theta);
     }
   }
 
