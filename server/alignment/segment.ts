@@ -92,7 +92,7 @@ export const POSITIONS_ONLY: Penalties = {
 export function segmentCurvature(grid: CurvatureGrid, penalties: Penalties): Segment[] {
   const { count: n, stepM, kappa, weight } = grid;
   const sums = prefixSums(grid);
-  const { W, WK, WKK, WS, WSS, WSK } = sums;
+  const { WKK } = sums;
   const KINDS = 5;
   const best = new Float64Array((n + 1) * KINDS).fill(Infinity);
   const from = new Int32Array((n + 1) * KINDS).fill(-1);
@@ -152,21 +152,25 @@ export function segmentCurvature(grid: CurvatureGrid, penalties: Penalties): Seg
       else if (arc > arcValue + penalties.arc + penalties.abruptBetween) break;
     }
     arcValue += penalties.arc;
+    // Moments of the cells [a, t) about t, summed as a goes back: prefix sums of squared positions would lose all digits on long runs.
+    let [w, wk, wkk, ws, wss, wsk] = [0, 0, 0, 0, 0, 0];
     for (let a = t - 1; a >= Math.max(0, t - mostChange); a--) {
-      const w = W[t]! - W[a]!;
-      const wk = WK[t]! - WK[a]!;
-      const wkk = WKK[t]! - WKK[a]!;
-      const ws = WS[t]! - WS[a]!;
-      const wss = WSS[t]! - WSS[a]!;
-      const wsk = WSK[t]! - WSK[a]!;
+      const cell = weight[a]!;
+      const k = kappa[a]!;
+      const d = a + 0.5 - t;
+      w += cell;
+      wk += cell * k;
+      wkk += cell * k * k;
+      ws += cell * d;
+      wss += cell * d * d;
+      wsk += cell * k * d;
       // Through zero at its beginning (up) or its end (down): moments about that end.
-      const upSS = wss - 2 * a * ws + a * a * w;
-      const upSK = wsk - a * wk;
+      const length = t - a;
+      const upSS = wss + 2 * length * ws + length * length * w;
+      const upSK = wsk + length * wk;
       const up = changeEnter[a]! + (upSS > 0 ? wkk - (upSK * upSK) / upSS : 0);
       if (up < upValue) [upValue, upFrom] = [up, a];
-      const downSS = wss - 2 * t * ws + t * t * w;
-      const downSK = wsk - t * wk;
-      const down = arcEnd[a]! + (downSS > 0 ? wkk - (downSK * downSK) / downSS : 0);
+      const down = arcEnd[a]! + (wss > 0 ? wkk - (wsk * wsk) / wss : 0);
       if (down < downValue) [downValue, downFrom] = [down, a];
       if (w <= 0) continue;
       const spread = wss - (ws * ws) / w;
@@ -236,20 +240,16 @@ function arcCost({ W, WK, WKK }: Sums, a: number, t: number): number {
   return WKK[t]! - WKK[a]! - (w > 0 ? (wk * wk) / w : 0);
 }
 
-/** Prefix sums of weight times 1, kappa, kappa^2, position, position^2, position * kappa; positions are cell middles. */
+/** Prefix sums of weight times 1, kappa and kappa^2. */
 function prefixSums({ count, kappa, weight }: CurvatureGrid) {
   const make = () => new Float64Array(count + 1);
-  const [W, WK, WKK, WS, WSS, WSK] = [make(), make(), make(), make(), make(), make()];
+  const [W, WK, WKK] = [make(), make(), make()];
   for (let c = 0; c < count; c++) {
     const w = weight[c]!;
     const k = kappa[c]!;
-    const s = c + 0.5;
     W[c + 1] = W[c]! + w;
     WK[c + 1] = WK[c]! + w * k;
     WKK[c + 1] = WKK[c]! + w * k * k;
-    WS[c + 1] = WS[c]! + w * s;
-    WSS[c + 1] = WSS[c]! + w * s * s;
-    WSK[c + 1] = WSK[c]! + w * s * k;
   }
-  return { W, WK, WKK, WS, WSS, WSK };
+  return { W, WK, WKK };
 }
