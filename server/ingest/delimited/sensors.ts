@@ -5,7 +5,7 @@ import type { PlannedColumn } from './plan.ts';
 const SENSOR_FIELDS = ['accelX', 'accelY', 'accelZ', 'gyroX', 'gyroY', 'gyroZ'] as const;
 export type SensorField = (typeof SENSOR_FIELDS)[number];
 
-export function isSensorField(field: string): field is SensorField {
+function isSensorField(field: string): field is SensorField {
   return (SENSOR_FIELDS as readonly string[]).includes(field);
 }
 

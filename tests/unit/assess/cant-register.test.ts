@@ -152,9 +152,9 @@ describe('laying a register onto a run', () => {
     expect(cants(register([{ curve: 3, cantMm: 77 }]))).toEqual([null, null, 77, null]);
     const placed = line.map((p, i) => ({
       ...p,
-      start: [51 + i, 4],
-      middle: [51.001 + i, 4.002],
-      end: [51.002 + i, 4.004],
+      start: [51 + i, 4] as const,
+      middle: [51.001 + i, 4.002] as const,
+      end: [51.002 + i, 4.004] as const,
     }));
     const reg = register([{ fromLatDeg: 53, fromLonDeg: 4, toLatDeg: 53.002, toLonDeg: 4.004, cantMm: 66 }]);
     expect(assessRun(run(placed), setup({ register: reg })).curves.map((c) => c.row.cant_source)).toEqual([
