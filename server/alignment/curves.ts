@@ -8,6 +8,11 @@ import { changeLength, levelAfter, levelBefore, SHORTEST_M } from './stretch-mod
 /** A curve must turn at least so much, rad, and stand out by so many standard deviations. */
 const LEAST_DEFLECTION_RAD = 0.008;
 const LEAST_SIGMA = 3.5;
+/**
+ * Lateral acceleration that no vehicle is driven at for long, m/s^2 (common practice, no source): where a curve owes its place
+ * to the deflection alone and would mean more, the fixes have jumped.
+ */
+const BEYOND_DRIVING_MPS2 = 4;
 /** One-sided 5 % level of the likelihood ratio at the boundary L = 0. */
 const TRANSITION_CHI2 = 2.71;
 /** Below this radius transitions up to 5 m are called abrupt, above it up to 15 m. */
@@ -32,14 +37,18 @@ interface Candidate {
 }
 
 /** Levels that are told from straight, in order along the run. */
-export function curveCandidates(fits: readonly StretchFit[]): Candidate[] {
+export function curveCandidates(fits: readonly StretchFit[], motion: Motion): Candidate[] {
   const found: Candidate[] = [];
   for (const fit of fits) {
     fit.stretch.levels.forEach((kappa, level) => {
       if (fit.stretch.straight[level]!) return;
       const { deflection, deflectionVariance, variance } = deflectionOf(fit, level);
-      const z = Math.max(Math.abs(kappa) / Math.sqrt(variance), Math.abs(deflection) / Math.sqrt(deflectionVariance));
-      if (z >= LEAST_SIGMA && Math.abs(deflection) >= LEAST_DEFLECTION_RAD) found.push({ fit, level });
+      if (Math.abs(deflection) < LEAST_DEFLECTION_RAD) return;
+      const sharp = Math.abs(kappa) >= LEAST_SIGMA * Math.sqrt(variance);
+      if (!sharp && Math.abs(deflection) < LEAST_SIGMA * Math.sqrt(deflectionVariance)) return;
+      const { meanMps } = arcSpeed(motion, fit.stretch.middles[level]!, fit.stretch.middles[level + 1]!);
+      if (!sharp && meanMps * meanMps * Math.abs(kappa) > BEYOND_DRIVING_MPS2) return;
+      found.push({ fit, level });
     });
   }
   return found;

@@ -30,8 +30,6 @@ const ROBUST_ROUNDS = 2;
 const FIRST_DAMPING = 1e-3;
 /** Robust factors that change by less leave the solution where it is. */
 const SAME_FACTOR = 1.15;
-/** Residual variance above this is a failed fit, not noise. */
-const LARGEST_INFLATION = 3;
 
 /**
  * Levenberg-Marquardt fit of a stretch on the points of its window: first with the smoother's weights alone, since a robust
@@ -79,7 +77,7 @@ export function fitStretch(
   if (observations < size + 2 || !cholesky.factor(equations.A, size, 0)) return null;
   const covariance = cholesky.inverse();
   const chi2PerDof = chi2 / (observations - size);
-  const inflation = Math.min(LARGEST_INFLATION, Math.max(1, chi2PerDof));
+  const inflation = Math.max(1, chi2PerDof);
   for (let i = 0; i < covariance.length; i++) covariance[i]! *= inflation;
   return {
     stretch,

@@ -45,7 +45,23 @@ export function normalPoints(run: Run, motion: Motion): NormalPoints {
       ? observed.courseRad
       : advanceDoppler(observed, { courseS: lagS, courseSdS: 0, speedS: lagS, speedSdS: 0 }, null).courseRad;
   const perBin = intervalS < 0.7 * BIN_S ? Math.max(1, Math.round(BIN_S / intervalS)) : 1;
-  const most = n;
+  const endOf = (i: number): number => {
+    const standing = (fixes.flags[i]! & FLAG.STOPPED) !== 0;
+    const span = (standing ? STANDING_BIN_S : perBin * intervalS) - 1e-3;
+    let j = i + 1;
+    while (
+      j < n &&
+      (standing || j - i < perBin) &&
+      ((fixes.flags[j]! & FLAG.STOPPED) !== 0) === standing &&
+      (fixes.flags[j]! & FLAG.GAP_BEFORE) === 0 &&
+      fixes.timeS[j]! - fixes.timeS[i]! < span
+    ) {
+      j++;
+    }
+    return j;
+  };
+  let most = 0;
+  for (let i = 0; i < n; i = endOf(i)) most++;
   const out = {
     timeS: new Float64Array(most),
     chainageM: new Float64Array(most),
@@ -61,17 +77,7 @@ export function normalPoints(run: Run, motion: Motion): NormalPoints {
   let count = 0;
   for (let i = 0; i < n; ) {
     const standing = (fixes.flags[i]! & FLAG.STOPPED) !== 0;
-    const span = standing ? STANDING_BIN_S : perBin * intervalS;
-    let j = i + 1;
-    while (
-      j < n &&
-      (standing || j - i < perBin) &&
-      ((fixes.flags[j]! & FLAG.STOPPED) !== 0) === standing &&
-      fixes.timeS[j]! - fixes.timeS[i]! < span - 1e-3 + (standing ? 0 : 1e-9)
-    ) {
-      if ((fixes.flags[j]! & FLAG.GAP_BEFORE) !== 0) break;
-      j++;
-    }
+    const j = endOf(i);
     const middle = (i + j - 1) >> 1;
     let [positions, px, py, pFactor, courses, pc, cFactor] = [0, 0, 0, 0, 0, 0, 0];
     for (let k = i; k < j; k++) {
@@ -100,19 +106,7 @@ export function normalPoints(run: Run, motion: Motion): NormalPoints {
     count++;
     i = j;
   }
-  return {
-    count,
-    binS: perBin > 1 ? perBin * intervalS : 0,
-    timeS: out.timeS.subarray(0, count),
-    chainageM: out.chainageM.subarray(0, count),
-    xM: out.xM.subarray(0, count),
-    yM: out.yM.subarray(0, count),
-    referenceRad: out.referenceRad.subarray(0, count),
-    headingRad: out.headingRad.subarray(0, count),
-    speedMps: out.speedMps.subarray(0, count),
-    positionShare: out.positionShare.subarray(0, count),
-    courseShare: out.courseShare.subarray(0, count),
-  };
+  return { count, binS: perBin > 1 ? perBin * intervalS : 0, ...out };
 }
 
 /** Rounding of courses enters the share as a multiple of this white variance, (m/s)^2: of the order of a Doppler error. */
