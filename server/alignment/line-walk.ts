@@ -1,7 +1,7 @@
 import { changeLength, levelAfter, levelBefore, type Layout, type Stretch } from './stretch-model.ts';
 
 /** A step of integration turns by no more than this, rad: Simpson's rule then errs by 1e-5 of the step's length. */
-const LARGEST_TURN_RAD = 0.4;
+const LARGEST_TURN_RAD = 0.25;
 
 /**
  * Walks along a stretch from its beginning: position and heading with their derivatives by all parameters.
