@@ -33,10 +33,17 @@ export function deflectionOf(fit: StretchFit, k: number) {
   };
 }
 
+/** Rise of the objective that a simpler stretch may cost: three parameters fewer at about ln n each. */
+export const ALLOWED_RISE = 13;
+/** For a short straight between two curves: it is told from none at the 5 % level, chi-square with two degrees of freedom. */
+const ALLOWED_WITHOUT_STRAIGHT = 6;
+
 /** A simpler stretch with the evidence against it: small where the part that falls is hardly told from nothing. */
 export interface Simplification {
   readonly evidence: number;
   readonly stretch: Stretch;
+  /** Rise of the objective that it may cost. */
+  readonly allowed: number;
 }
 
 /**
@@ -56,19 +63,22 @@ export function simplifications(fit: StretchFit): Simplification[] {
       const gap = stretch.middles[k + 1]! - stretch.middles[k]! - taken;
       const variance = covariance[c1 * n + c1]! + covariance[c2 * n + c2]! - 2 * covariance[c1 * n + c2]!;
       const evidence = (gap * gap) / Math.max(1e-6, variance);
-      if (evidence < 4) found.push({ evidence, stretch: withoutStraight(stretch, k) });
+      if (evidence < 4)
+        found.push({ evidence, stretch: withoutStraight(stretch, k), allowed: ALLOWED_WITHOUT_STRAIGHT });
       continue;
     }
     const evidence = evidenceOf(fit, k);
-    if (evidence < LEAST_EVIDENCE) found.push({ evidence, stretch: withoutLevel(stretch, k) });
-    if (isTransient(fit, k)) found.push({ evidence: LEAST_EVIDENCE / 2, stretch: withoutLevel(stretch, k) });
+    if (evidence < LEAST_EVIDENCE) found.push({ evidence, stretch: withoutLevel(stretch, k), allowed: ALLOWED_RISE });
+    if (isTransient(fit, k))
+      found.push({ evidence: LEAST_EVIDENCE / 2, stretch: withoutLevel(stretch, k), allowed: ALLOWED_RISE });
     const next = k + 1;
     if (next >= stretch.levels.length || stretch.straight[next]!) continue;
     const [p, q] = [layout.level[k]!, layout.level[next]!];
     const difference = stretch.levels[next]! - stretch.levels[k]!;
     const variance = covariance[p * n + p]! + covariance[q * n + q]! - 2 * covariance[p * n + q]!;
     const contrast = (difference * difference) / Math.max(1e-20, variance);
-    if (contrast < LEAST_EVIDENCE) found.push({ evidence: contrast, stretch: merged(stretch, k) });
+    if (contrast < LEAST_EVIDENCE)
+      found.push({ evidence: contrast, stretch: merged(stretch, k), allowed: ALLOWED_RISE });
   }
   return found.sort((a, b) => a.evidence - b.evidence);
 }

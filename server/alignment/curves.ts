@@ -25,6 +25,8 @@ export interface CurveContext {
   /** Relative sd of the chainage's scale over an arc of n speed readings is scaleSdMps / (v sqrt(n)). */
   readonly scaleSdMps: number;
   readonly hasCourse: boolean;
+  /** Sd of what remains of the lag of courses, s: shifts every change along the line. */
+  readonly lagSdS: number;
   /** Degrees of freedom behind the noise levels, for Student's factor. */
   readonly noiseDof: number;
   readonly goodShare: (fit: StretchFit, fromM: number, toM: number) => number;
@@ -73,8 +75,10 @@ function buildCurve(
   const n = layout.size;
   const kappa = stretch.levels[level]!;
   const factor = studentFactor95(Math.min(context.noiseDof, Math.max(3, fit.observations - n) * 3));
-  const entry = curveEnd(fit, level, level, 'entry', numberOf, factor);
-  const exit = curveEnd(fit, level, level + 1, 'exit', numberOf, factor);
+  const { meanMps } = arcSpeed(context.motion, stretch.middles[level]!, stretch.middles[level + 1]!);
+  const shiftSdM = context.lagSdS * meanMps;
+  const entry = curveEnd(fit, level, level, 'entry', numberOf, factor, shiftSdM);
+  const exit = curveEnd(fit, level, level + 1, 'exit', numberOf, factor, shiftSdM);
   const startM = entry.outerM;
   const endM = exit.outerM;
   const arcStartM = Math.min(entry.innerM, (entry.innerM + exit.innerM) / 2);
@@ -136,6 +140,7 @@ function curveEnd(
   side: 'entry' | 'exit',
   numberOf: (fit: StretchFit, level: number) => number | null,
   factor: number,
+  shiftSdM: number,
 ): PlacedEnd {
   const { stretch, layout, covariance } = fit;
   const n = layout.size;
@@ -143,7 +148,7 @@ function curveEnd(
   const kappa = stretch.levels[level]!;
   const other = side === 'entry' ? levelBefore(stretch, change) : levelAfter(stretch, change);
   const c = stretch.middles[change]!;
-  const cSd = Math.sqrt(Math.max(0, covariance[m * n + m]!));
+  const cSd = Math.hypot(Math.sqrt(Math.max(0, covariance[m * n + m]!)), shiftSdM);
   const u = stretch.squares[change]!;
   const uSd = Math.sqrt(Math.max(0, covariance[(m + 1) * n + m + 1]!));
   let length = changeLength(u) <= SHORTEST_M ? 0 : changeLength(u);

@@ -2,7 +2,7 @@ import type { Alignment } from '../../shared/model/alignment.ts';
 import type { Finding } from '../../shared/model/finding.ts';
 import type { Motion } from '../../shared/model/motion.ts';
 import type { Run } from '../../shared/model/run.ts';
-import { divisions, restarts, simplifications } from './choose-model.ts';
+import { ALLOWED_RISE, divisions, restarts, simplifications } from './choose-model.ts';
 import { whyNotCredible } from './credible.ts';
 import { buildCurves, curveCandidates, elementsOf, type CurveContext } from './curves.ts';
 import { fitStretch, type StretchFit } from './fit-stretch.ts';
@@ -50,6 +50,7 @@ export function fitAlignment(run: Run, motion: Motion): { alignment: Alignment; 
     motion,
     scaleSdMps: quality.noise.sigmaSpeedMps,
     hasCourse: use.course,
+    lagSdS: use.course ? quality.noise.lagSdS : 0,
     noiseDof: Math.max(10, read.observations / 4),
     goodShare(fit, fromM, toM) {
       return observedShare(points, fit, fromM, toM);
@@ -80,8 +81,6 @@ function fitAll(
   return stretches.flatMap((stretch) => settleStretch(stretch, null, equations, points, motion, noise, use));
 }
 
-/** Rise of the objective that a simpler stretch may cost: three parameters fewer at about ln n each. */
-const ALLOWED_RISE = 13;
 /** Fall of the objective that a richer stretch must bring. */
 const REQUIRED_FALL = 16;
 /** Residual variance beyond which other starts and divisions are tried. */
@@ -138,13 +137,13 @@ function nextSimpler(
   attempt: (stretch: Stretch, from: Float64Array | null) => StretchFit | null,
   nothing: () => number,
 ): StretchFit | 'straight' | null {
-  for (const { stretch } of simplifications(fit).slice(0, MOST_TRIES)) {
+  for (const { stretch, allowed } of simplifications(fit).slice(0, MOST_TRIES)) {
     if (stretch.levels.length === 0) {
       if (nothing() - fit.objective < ALLOWED_RISE) return 'straight';
       continue;
     }
     const next = attempt(stretch, fit.pose);
-    if (next !== null && next.objective - fit.objective < ALLOWED_RISE) return next;
+    if (next !== null && next.objective - fit.objective < allowed) return next;
   }
   return null;
 }
