@@ -126,6 +126,27 @@ export function divisions(fit: StretchFit): Stretch[] {
   return out;
 }
 
+/**
+ * The same stretch with the direct change before level j, between curves of opposite hand, as two changes that touch where the
+ * curvature is zero: their slopes may differ then.
+ *
+ * @returns null where the change is not of that kind
+ */
+export function partedReverse(stretch: Stretch, j: number): Stretch | null {
+  const [before, after] = [stretch.levels[j - 1]!, stretch.levels[j]!];
+  if (before * after >= 0) return null;
+  const length = Math.max(2, changeLength(stretch.squares[j]!));
+  const from = stretch.middles[j]! - length / 2;
+  const zero = from + (length * Math.abs(before)) / (Math.abs(before) + Math.abs(after));
+  const to = from + length;
+  const parted = copyStretch(stretch);
+  parted.levels.splice(j, 0, 0);
+  parted.straight.splice(j, 0, true);
+  parted.middles.splice(j, 1, (from + zero) / 2, (zero + to) / 2);
+  parted.squares.splice(j, 1, (zero - from) ** 2, (to - zero) ** 2);
+  return parted;
+}
+
 /** The same stretch with shorter and with longer changes: other minima to start from. */
 export function restarts(stretch: Stretch): Stretch[] {
   return [0.08, 5].map((factor) => {

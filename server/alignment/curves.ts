@@ -3,7 +3,7 @@ import type { Motion } from '../../shared/model/motion.ts';
 import type { AlignmentElement, Curve, CurveEnd, CurveShape, Estimate } from '../../shared/model/alignment.ts';
 import { deflectionOf } from './choose-model.ts';
 import type { StretchFit } from './fit-stretch.ts';
-import { changeLength, levelAfter, levelBefore, SHORTEST_M } from './stretch-model.ts';
+import { changeLength, levelAfter, levelBefore, SHORTEST_M, type Stretch } from './stretch-model.ts';
 
 /** A curve must turn at least so much, rad, and stand out by so many standard deviations. */
 const LEAST_DEFLECTION_RAD = 0.008;
@@ -18,6 +18,8 @@ const TRANSITION_CHI2 = 2.71;
 /** Below this radius transitions up to 5 m are called abrupt, above it up to 15 m. */
 const SHARP_RADIUS_M = 150;
 const WELL_OBSERVED = 0.7;
+/** Curves with less than this between them touch, m. */
+const TOUCHING_M = 1;
 
 /** What the curves of a fit need besides the fit itself. */
 export interface CurveContext {
@@ -170,7 +172,10 @@ function curveEnd(
   }
   if (kind === 'abrupt') length = 0;
   const neighbour = side === 'entry' ? level - 1 : level + 1;
-  const joins = other !== 0 ? numberOf(fit, neighbour) : null;
+  const beyond = side === 'entry' ? level - 2 : level + 2;
+  const touching =
+    other === 0 && stretch.straight[neighbour] === true && straightLength(stretch, neighbour) < TOUCHING_M;
+  const joins = other !== 0 ? numberOf(fit, neighbour) : touching ? numberOf(fit, beyond) : null;
   const half = length / 2;
   return {
     end: {
@@ -188,6 +193,11 @@ function curveEnd(
     outerM: side === 'entry' ? centre - half : centre + half,
     innerM: side === 'entry' ? centre + half : centre - half,
   };
+}
+
+/** What the changes on both sides leave of level k, m. */
+function straightLength({ middles, squares }: Stretch, k: number): number {
+  return middles[k + 1]! - middles[k]! - (changeLength(squares[k]!) + changeLength(squares[k + 1]!)) / 2;
 }
 
 function shapeOf(entry: CurveEnd, exit: CurveEnd, kappa: number): CurveShape {

@@ -2,7 +2,7 @@ import type { Alignment } from '../../shared/model/alignment.ts';
 import type { Finding } from '../../shared/model/finding.ts';
 import type { Motion } from '../../shared/model/motion.ts';
 import type { Run } from '../../shared/model/run.ts';
-import { ALLOWED_RISE, divisions, restarts, simplifications } from './choose-model.ts';
+import { ALLOWED_RISE, divisions, partedReverse, restarts, simplifications } from './choose-model.ts';
 import { whyNotCredible } from './credible.ts';
 import { buildCurves, curveCandidates, elementsOf, type CurveContext } from './curves.ts';
 import { fitStretch, type StretchFit } from './fit-stretch.ts';
@@ -83,6 +83,8 @@ function fitAll(
 
 /** Fall of the objective that a richer stretch must bring. */
 const REQUIRED_FALL = 16;
+/** Fall of the objective that the second slope of a reverse must bring: chi-square with two degrees of freedom. */
+const PARTED_FALL = 4;
 /** Residual variance beyond which other starts and divisions are tried. */
 const POOR_FIT = 1.7;
 /** Points times squared parameters spent on one stretch, all attempts together; a hopeless one must not hold up the rest. */
@@ -128,7 +130,17 @@ function settleStretch(
     if (simpler === null) break;
     fit = simpler;
   }
-  return fit === null ? [] : [fit];
+  if (fit === null) return [];
+  for (let j = 1; j < fit.stretch.levels.length; j++) {
+    const other = partedReverse(fit.stretch, j);
+    if (other === null) continue;
+    const parted = attempt(other, fit.pose);
+    if (parted === null || parted.objective > fit.objective - PARTED_FALL) continue;
+    fit = parted;
+    // Past the straight of no length that is level j now.
+    j++;
+  }
+  return [fit];
 }
 
 /** The first simplification that costs no more than it may; `straight` when nothing is left. */
