@@ -24,6 +24,12 @@ export interface Stretch {
 /** Shorter changes are drawn this long, m: their effect cannot be told from an abrupt change. */
 export const SHORTEST_M = 0.5;
 
+/**
+ * Changes leave at least the rest of a curve to the arc: curves are laid out with an arc, and where the data do not tell, one that
+ * vanishes between two long changes would be sharper than any seen.
+ */
+const LARGEST_SHARE_OF_CHANGES = 0.85;
+
 export function changeLength(square: number): number {
   return Math.sqrt(Math.max(square, SHORTEST_M * SHORTEST_M));
 }
@@ -63,7 +69,7 @@ export function levelAfter(stretch: Stretch, j: number): number {
 
 /** Keeps the changes in order and no longer than the levels between them allow. */
 export function settle(stretch: Stretch): void {
-  const { middles, squares, fromM, toM } = stretch;
+  const { straight, middles, squares, fromM, toM } = stretch;
   const n = middles.length;
   for (let j = 0; j < n; j++) {
     middles[j] = Math.min(toM - 1, Math.max(fromM + 1, middles[j]!));
@@ -79,8 +85,9 @@ export function settle(stretch: Stretch): void {
   for (let j = 0; j + 1 < n; j++) {
     const gap = middles[j + 1]! - middles[j]!;
     const taken = (changeLength(squares[j]!) + changeLength(squares[j + 1]!)) / 2;
-    if (taken <= gap) continue;
-    const shrink = (gap / taken) ** 2;
+    const most = straight[j]! ? gap : LARGEST_SHARE_OF_CHANGES * gap;
+    if (taken <= most) continue;
+    const shrink = (most / taken) ** 2;
     squares[j] = squares[j]! * shrink;
     squares[j + 1] = squares[j + 1]! * shrink;
   }
