@@ -9,10 +9,10 @@ import { changeLength, levelAfter, levelBefore, SHORTEST_M, type Stretch } from 
 const LEAST_DEFLECTION_RAD = 0.008;
 const LEAST_SIGMA = 3.5;
 /**
- * Lateral acceleration that no vehicle is driven at for long, m/s^2 (common practice, no source): where a curve owes its place
+ * Lateral acceleration near what tyres can give on a dry road, m/s^2 (common practice, no source): where a curve owes its place
  * to the deflection alone and would mean more, the fixes have jumped.
  */
-const BEYOND_DRIVING_MPS2 = 4;
+const BEYOND_DRIVING_MPS2 = 7;
 /** One-sided 5 % level of the likelihood ratio at the boundary L = 0. */
 const TRANSITION_CHI2 = 2.71;
 /** Below this radius transitions up to 5 m are called abrupt, above it up to 15 m. */
