@@ -1,7 +1,7 @@
 import type { CurveColumn } from '../../shared/schema/curve-columns.ts';
 import type { CurveRow } from '../../shared/schema/curve-row.ts';
 import { criterionOf } from '../../shared/limits/criteria.ts';
-import { criterionName, figure, limitQuantity, quantity } from '../parts/text.ts';
+import { criterionName, figure, quantity } from '../parts/text.ts';
 import { inShown, shownUnit, type ShownUnits } from '../parts/units.ts';
 import { isChainage } from './columns.ts';
 
@@ -26,7 +26,7 @@ function criterionText(row: CurveRow, key: 'value' | 'limit', units: ShownUnits)
   const value = row[key];
   if (row.governing_criterion === null || value === null) return '–';
   const { unit, decimals } = criterionOf(row.governing_criterion);
-  return (key === 'limit' ? limitQuantity : quantity)(value, unit, decimals, units);
+  return quantity(value, unit, decimals, units).replaceAll('\u00a0', ' ');
 }
 
 /**

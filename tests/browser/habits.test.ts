@@ -152,6 +152,7 @@ describe('every screen', () => {
         opened.push(watched);
         await watched.page.getByRole('button', { name: 'Load the demonstration line' }).waitFor();
         expect(await violationsOf(watched.page)).toEqual([]);
+        await watched.page.context().close();
       }
     } finally {
       await empty.end();
