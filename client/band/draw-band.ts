@@ -231,7 +231,7 @@ function limitOf(strip: Strip, curves: readonly AssessedCurve[]): { value: numbe
   if (strip.criterion === null) return null;
   for (const { criteria } of curves) {
     const found = criteria.find((c) => c.criterion === strip.criterion);
-    if (found?.limit != null) return { value: found.limit };
+    if (found !== undefined && found.limit !== null) return { value: found.limit };
   }
   return null;
 }
@@ -300,7 +300,7 @@ function drawOverview(surface: Surface, drawing: BandDrawing, top: number): void
   surface.line([a, top, b, top, b, top + height, a, top + height, a, top], colours.accent, 1.5);
 }
 
-export function niceStep(raw: number): number {
+function niceStep(raw: number): number {
   const power = 10 ** Math.floor(Math.log10(Math.max(raw, 1e-6)));
   const lead = raw / power;
   return power * (lead <= 1 ? 1 : lead <= 2 ? 2 : lead <= 5 ? 5 : 10);

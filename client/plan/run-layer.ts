@@ -254,7 +254,7 @@ export function unwrapped(lon: number, reference: number): number {
   return d > 180 ? lon - 360 : d < -180 ? lon + 360 : lon;
 }
 
-export function lowerBound(ascending: ArrayLike<number>, value: number): number {
+function lowerBound(ascending: ArrayLike<number>, value: number): number {
   let low = 0;
   let high = ascending.length;
   while (low < high) {

@@ -67,7 +67,7 @@ export function rampOf(quantity: Quantity): Ramp {
 }
 
 /** Number of colours: neighbours stay apart for every kind of colour vision. */
-export const CLASSES = 7;
+const CLASSES = 7;
 
 /** Colours of the classes; the lightest ends are left out, since a line must stand out from paper. */
 export function rampColours(ramp: Ramp): string[] {
