@@ -4,6 +4,12 @@ import { pointFrom } from './points.ts';
 
 /** No wheeled passenger vehicle is pushed sideways harder than this, m/s^2: a fit that says so has followed an error. */
 const GREATEST_LATERAL_MPS2 = 14;
+/**
+ * A curve that stands out by its turn alone, its curvature not told from straight, is the smear of a leap of position when it
+ * would push harder than this, m/s^2: near what tyres give on a dry road (common practice, no source).
+ */
+const GREATEST_BY_TURN_MPS2 = 7;
+const TOLD_BY_CURVATURE_SIGMA = 3.5;
 /** No vehicle turns about less than this, m. */
 const LEAST_RADIUS_M = 3.5;
 /** A turn of more than this is an error of the heading across a stop or a gap, rad. */
@@ -21,6 +27,8 @@ export function whyNotCredible(curve: Curve, points: NormalPoints): string | nul
   if (1 / kappa < LEAST_RADIUS_M) return 'sharper than any vehicle turns';
   if (curve.speedMps.value ** 2 * kappa > GREATEST_LATERAL_MPS2)
     return 'sharper than any vehicle could pass at its speed';
+  const told = kappa >= TOLD_BY_CURVATURE_SIGMA * curve.curvaturePerM.sd;
+  if (!told && curve.speedMps.value ** 2 * kappa > GREATEST_BY_TURN_MPS2) return 'at a leap of the positions';
   if (curve.deflectionRad.value > GREATEST_TURN_RAD) return 'a whole turn on the spot';
   return fixesWithin(points, curve.startM, curve.endM) < 2 ? 'without a fix in it' : null;
 }

@@ -8,11 +8,6 @@ import { changeLength, levelAfter, levelBefore, SHORTEST_M, type Stretch } from 
 /** A curve must turn at least so much, rad, and stand out by so many standard deviations. */
 const LEAST_DEFLECTION_RAD = 0.008;
 const LEAST_SIGMA = 3.5;
-/**
- * Lateral acceleration near what tyres can give on a dry road, m/s^2 (common practice, no source): where a curve owes its place
- * to the deflection alone and would mean more, the fixes have jumped.
- */
-const BEYOND_DRIVING_MPS2 = 7;
 /** One-sided 5 % level of the likelihood ratio at the boundary L = 0. */
 const TRANSITION_CHI2 = 2.71;
 /** Below this radius transitions up to 5 m are called abrupt, above it up to 15 m. */
@@ -41,7 +36,7 @@ interface Candidate {
 }
 
 /** Levels that are told from straight, in order along the run. */
-export function curveCandidates(fits: readonly StretchFit[], motion: Motion): Candidate[] {
+export function curveCandidates(fits: readonly StretchFit[]): Candidate[] {
   const found: Candidate[] = [];
   for (const fit of fits) {
     fit.stretch.levels.forEach((kappa, level) => {
@@ -50,8 +45,6 @@ export function curveCandidates(fits: readonly StretchFit[], motion: Motion): Ca
       if (Math.abs(deflection) < LEAST_DEFLECTION_RAD) return;
       const sharp = Math.abs(kappa) >= LEAST_SIGMA * Math.sqrt(variance);
       if (!sharp && Math.abs(deflection) < LEAST_SIGMA * Math.sqrt(deflectionVariance)) return;
-      const { meanMps } = arcSpeed(motion, fit.stretch.middles[level]!, fit.stretch.middles[level + 1]!);
-      if (!sharp && meanMps * meanMps * Math.abs(kappa) > BEYOND_DRIVING_MPS2) return;
       found.push({ fit, level });
     });
   }

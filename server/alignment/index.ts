@@ -45,7 +45,7 @@ export function fitAlignment(run: Run, motion: Motion): { alignment: Alignment; 
   parameters = read.parameters;
   noise = pointNoise(parameters, points.binS);
   fits = fits.flatMap((fit) => settleStretch(fit.stretch, fit.pose, equations, points, motion, noise, use));
-  const candidates = curveCandidates(fits, motion);
+  const candidates = curveCandidates(fits);
   const context: CurveContext = {
     motion,
     scaleSdMps: quality.noise.sigmaSpeedMps,
